@@ -1,0 +1,2 @@
+//! Netlists and their DC solution; knows no mirror.
+pub mod netlist;

@@ -1,0 +1,7 @@
+//! biasloom: from a table of bias-current requirements to verified networks of MOS mirrors.
+
+pub mod circuit;
+pub mod explore;
+pub mod process;
+pub mod spec;
+pub mod units;
