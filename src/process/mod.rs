@@ -1,5 +1,7 @@
 //! Process cards: what the silicon does, with the source of every value.
 
+mod curve;
+
 use crate::units::{Kelvin, Metre, Range, Volt};
 
 /// A checked process card.

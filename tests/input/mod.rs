@@ -1,0 +1,3 @@
+//! Quantities, diagnostics, specs and process cards.
+
+mod curve;

@@ -1,0 +1,3 @@
+//! The one integration binary: a plain list of modules.
+
+mod input;
