@@ -1,0 +1,559 @@
+//! The DC solution: nodal equations, Newton with the exact Jacobian, continuation where it fails.
+//!
+//! One [`Circuit`] holds one netlist at eight corners side by side. Newton's equations are set up
+//! at the unknown nodes only; a node tied to ground through a voltage source is known.
+//! Convergence asks for both: the last step below 3e-7 V (the next would be its square over
+//! 2 UT, some 1e-12 V) and Kirchhoff's current law at every node to 1e-9 of the currents
+//! that meet there. A lane that fails is retried by source stepping and then by gmin
+//! stepping (Ho, Ruehli, Brennan, IEEE Trans. CAS 22, 1975); what still fails is reported.
+
+use super::netlist::{GROUND, Netlist, Node, Polarity};
+use crate::device::{Device, Point};
+use crate::numeric::dispatch::{Work, widest};
+use crate::numeric::lanes::{Lanes, Mask};
+use crate::numeric::sparse::{Factors, Plan};
+
+/// No equation or no unknown at this place.
+const NONE: u32 = u32::MAX;
+/// Largest change of a node in one Newton step, V.
+const STEP_MOST: f64 = 0.3;
+/// Last Newton step of a converged lane, V.
+const STEP_DONE: f64 = 3e-7;
+/// Current-law residual of a converged lane, as a share of the currents at the node.
+const RESIDUAL_DONE: f64 = 1e-9;
+/// Current below which a node's balance is not resolved, A.
+const CURRENT_FLOOR: f64 = 1e-20;
+/// Newton iterations before a lane counts as stuck.
+const ITERATIONS: u32 = 60;
+
+/// A transistor in eight lanes.
+#[derive(Debug, Clone)]
+pub struct MosLanes {
+    /// Drain, gate, source, bulk.
+    pub nodes: [Node; 4],
+    /// +1 for n-channel, -1 for p-channel.
+    pub sign: f64,
+    /// The device, all its units together.
+    pub device: Device,
+    slots: [u32; 12],
+}
+
+/// A resistor in eight lanes.
+#[derive(Debug, Clone)]
+pub struct ResistorLanes {
+    /// Both ends.
+    pub nodes: [Node; 2],
+    /// Conductance, S.
+    pub conductance: Lanes,
+    slots: [u32; 4],
+}
+
+/// A current source in eight lanes.
+#[derive(Debug, Clone)]
+pub struct CurrentLanes {
+    /// The current leaves the circuit at the first and enters at the second.
+    pub nodes: [Node; 2],
+    /// Value, A.
+    pub amps: Lanes,
+}
+
+/// One netlist at eight corners.
+#[derive(Debug, Clone)]
+pub struct Circuit {
+    /// Transistors, in netlist order.
+    pub mos: Vec<MosLanes>,
+    /// Resistors, in netlist order.
+    pub resistors: Vec<ResistorLanes>,
+    /// Current sources, in netlist order.
+    pub currents: Vec<CurrentLanes>,
+    /// Known voltage of a node, where it is known.
+    pub fixed: Vec<Option<Lanes>>,
+    /// Index among the unknowns, or `u32::MAX`.
+    row: Vec<u32>,
+    n: usize,
+    pattern: Vec<(usize, usize)>,
+    diagonal: Vec<u32>,
+    plan: Option<Plan>,
+}
+
+/// Why a netlist cannot be solved.
+#[derive(Debug, Clone, PartialEq, Eq, thiserror::Error)]
+pub enum CircuitError {
+    /// A voltage source hangs between two nodes of which neither is ground.
+    #[error("voltage source {0} must have one end at ground")]
+    FloatingSource(String),
+    /// Two voltage sources set one node.
+    #[error("node {0} is set by two voltage sources")]
+    SetTwice(String),
+}
+
+/// Node voltages and what was evaluated there.
+#[derive(Debug, Clone, Default)]
+pub struct State {
+    /// Voltage of every node, V.
+    pub volts: Vec<Lanes>,
+    /// Every transistor at these voltages.
+    pub points: Vec<Point>,
+    /// Lanes that met both criteria.
+    pub converged: [bool; 8],
+    /// Largest residual over the unknown nodes, as a share of the currents there.
+    pub residual: [f64; 8],
+    /// Newton iterations spent.
+    pub iterations: u32,
+    pub(super) factors: Factors,
+    pub(super) factored: bool,
+    f: Vec<Lanes>,
+    scale: Vec<Lanes>,
+    dx: Vec<Lanes>,
+}
+
+impl Circuit {
+    /// The structure of a netlist; devices are placed by `device`, which gets the index of the
+    /// transistor and returns it with all its units.
+    pub fn new(
+        netlist: &Netlist,
+        mut device: impl FnMut(usize) -> Device,
+    ) -> Result<Circuit, CircuitError> {
+        let mut fixed: Vec<Option<Lanes>> = vec![None; netlist.nodes.len()];
+        fixed[GROUND] = Some(Lanes::ZERO);
+        for source in &netlist.voltages {
+            let (node, volts) = match (source.plus, source.minus) {
+                (node, GROUND) => (node, source.volts),
+                (GROUND, node) => (node, -source.volts),
+                _ => return Err(CircuitError::FloatingSource(source.name.clone())),
+            };
+            if fixed[node].is_some() {
+                return Err(CircuitError::SetTwice(netlist.nodes[node].clone()));
+            }
+            fixed[node] = Some(Lanes::splat(volts));
+        }
+        let mut row = vec![NONE; netlist.nodes.len()];
+        let mut n = 0;
+        for (node, value) in fixed.iter().enumerate() {
+            if value.is_none() {
+                row[node] = n as u32;
+                n += 1;
+            }
+        }
+        // Every diagonal has a place: gmin stepping needs it.
+        let mut pattern: Vec<(usize, usize)> = (0..n).map(|i| (i, i)).collect();
+        let diagonal = (0..n as u32).collect();
+        let mut entry = |r: u32, c: u32| {
+            if r == NONE || c == NONE {
+                return NONE;
+            }
+            pattern.push((r as usize, c as usize));
+            pattern.len() as u32 - 1
+        };
+        let mos = netlist
+            .mos
+            .iter()
+            .enumerate()
+            .map(|(k, m)| {
+                let nodes = [m.drain, m.gate, m.source, m.bulk];
+                let mut slots = [NONE; 12];
+                for (i, &r) in [m.drain, m.source, m.bulk].iter().enumerate() {
+                    for (j, &c) in nodes.iter().enumerate() {
+                        slots[4 * i + j] = entry(row[r], row[c]);
+                    }
+                }
+                MosLanes {
+                    nodes,
+                    sign: if m.polarity == Polarity::N { 1.0 } else { -1.0 },
+                    device: device(k),
+                    slots,
+                }
+            })
+            .collect();
+        let resistors = netlist
+            .resistors
+            .iter()
+            .map(|r| {
+                let (a, b) = (row[r.a], row[r.b]);
+                ResistorLanes {
+                    nodes: [r.a, r.b],
+                    conductance: Lanes::splat(f64::from(r.units) / r.ohms),
+                    slots: [entry(a, a), entry(a, b), entry(b, a), entry(b, b)],
+                }
+            })
+            .collect();
+        let currents = netlist
+            .currents
+            .iter()
+            .map(|s| CurrentLanes {
+                nodes: [s.from, s.to],
+                amps: Lanes::splat(s.amps),
+            })
+            .collect();
+        Ok(Circuit {
+            mos,
+            resistors,
+            currents,
+            fixed,
+            row,
+            n,
+            pattern,
+            diagonal,
+            plan: None,
+        })
+    }
+
+    /// Number of unknown nodes.
+    pub fn unknowns(&self) -> usize {
+        self.n
+    }
+
+    pub(super) fn row(&self, node: Node) -> Option<usize> {
+        (self.row[node] != NONE).then_some(self.row[node] as usize)
+    }
+
+    pub(super) fn plan(&self) -> &Plan {
+        self.plan
+            .as_ref()
+            .expect("a plan is made by the first solution")
+    }
+
+    /// Solves from the voltages in `state.volts` (unknown nodes; the known ones are set here).
+    /// Returns whether every lane converged; `state` says which.
+    pub fn solve(&mut self, state: &mut State) -> bool {
+        assert_eq!(
+            state.volts.len(),
+            self.fixed.len(),
+            "one starting voltage per node"
+        );
+        let start = state.volts.clone();
+        if self.newton(state, 1.0, 0.0) {
+            return true;
+        }
+        self.rescue(state, &start);
+        state.converged.iter().all(|&c| c)
+    }
+
+    /// Newton at `share` of every source, with `gmin` from every unknown node to ground.
+    fn newton(&mut self, state: &mut State, share: f64, gmin: f64) -> bool {
+        for (node, value) in self.fixed.iter().enumerate() {
+            if let Some(v) = value {
+                state.volts[node] = *v * share;
+            }
+        }
+        if self.plan.is_none() && !self.make_plan(state, share, gmin) {
+            state.converged = [false; 8];
+            return false;
+        }
+        let done = widest(Newton {
+            circuit: self,
+            state,
+            share,
+            gmin,
+        });
+        if !done && state.residual.iter().any(|r| !r.is_finite()) {
+            // A pivot order that fits one bias point can fail at another: forget it.
+            self.plan = None;
+        }
+        done
+    }
+
+    fn make_plan(&mut self, state: &mut State, share: f64, gmin: f64) -> bool {
+        // Unplanned slots equal entries: assemble into them and read one lane.
+        state.prepare(self.n, self.mos.len());
+        state.factors = Factors::zeroed(self.pattern.len());
+        assemble(self, state, share, gmin, |entry| entry);
+        for lane in 0..8 {
+            let values: Vec<f64> = (0..self.pattern.len())
+                .map(|e| state.factors.value(e).0[lane])
+                .collect();
+            if let Some(plan) = Plan::new(self.n, &self.pattern, &values) {
+                self.plan = Some(plan);
+                return true;
+            }
+        }
+        false
+    }
+
+    /// Source stepping, then gmin stepping, for the lanes Newton left.
+    fn rescue(&mut self, state: &mut State, start: &[Lanes]) {
+        let mut best = state.clone();
+        let mut iterations = state.iterations;
+        let mut adopt = |state: &State, best: &mut State| {
+            iterations += state.iterations;
+            best.iterations = iterations;
+            for lane in 0..8 {
+                if !best.converged[lane] && state.converged[lane] {
+                    for (to, from) in best.volts.iter_mut().zip(&state.volts) {
+                        to.0[lane] = from.0[lane];
+                    }
+                    best.converged[lane] = true;
+                    best.residual[lane] = state.residual[lane];
+                }
+            }
+            best.converged.iter().all(|&c| c)
+        };
+        let ramps: [&[(f64, f64)]; 2] = [
+            // (share of the sources, gmin)
+            &[
+                (0.02, 0.0),
+                (0.05, 0.0),
+                (0.1, 0.0),
+                (0.2, 0.0),
+                (0.3, 0.0),
+                (0.4, 0.0),
+                (0.5, 0.0),
+                (0.6, 0.0),
+                (0.7, 0.0),
+                (0.8, 0.0),
+                (0.9, 0.0),
+                (0.95, 0.0),
+            ],
+            &[
+                (1.0, 1e-4),
+                (1.0, 1e-5),
+                (1.0, 1e-6),
+                (1.0, 1e-7),
+                (1.0, 1e-8),
+                (1.0, 1e-9),
+                (1.0, 1e-10),
+                (1.0, 1e-11),
+                (1.0, 1e-12),
+                (1.0, 1e-13),
+            ],
+        ];
+        for ramp in ramps {
+            state.volts.copy_from_slice(start);
+            self.plan = None;
+            for &(share, gmin) in ramp {
+                // An intermediate point that fails leaves its best guess to the next one.
+                self.newton(state, share, gmin);
+                for v in &mut state.volts {
+                    *v = Lanes::from_fn(|i| if v.0[i].is_finite() { v.0[i] } else { 0.0 });
+                }
+            }
+            self.newton(state, 1.0, 0.0);
+            if adopt(state, &mut best) {
+                break;
+            }
+        }
+        // Evaluate once more so that points and slopes belong to the adopted voltages.
+        std::mem::swap(state, &mut best);
+        let (converged, residual) = (state.converged, state.residual);
+        self.newton_once(state);
+        state.converged = converged;
+        state.residual = residual;
+    }
+
+    /// Evaluates every element at the present voltages, without a step.
+    fn newton_once(&mut self, state: &mut State) {
+        for (node, value) in self.fixed.iter().enumerate() {
+            if let Some(v) = value {
+                state.volts[node] = *v;
+            }
+        }
+        if self.plan.is_none() && !self.make_plan(state, 1.0, 0.0) {
+            return;
+        }
+        widest(Evaluate {
+            circuit: self,
+            state,
+        });
+    }
+}
+
+impl State {
+    /// Starting voltages for a circuit: the known nodes are set by the solution itself.
+    pub fn start(volts: Vec<Lanes>) -> State {
+        State {
+            volts,
+            ..State::default()
+        }
+    }
+
+    #[inline(always)]
+    fn prepare(&mut self, n: usize, mos: usize) {
+        self.f.clear();
+        self.f.resize(n, Lanes::ZERO);
+        self.scale.clear();
+        self.scale.resize(n, Lanes::ZERO);
+        self.dx.clear();
+        self.dx.resize(n, Lanes::ZERO);
+        if self.points.len() != mos {
+            self.points.resize(mos, Point::OFF);
+        }
+        self.factored = false;
+    }
+}
+
+/// Residual and Jacobian at the present voltages; `slot` says where an entry of the pattern goes.
+#[inline(always)]
+fn assemble(
+    circuit: &Circuit,
+    state: &mut State,
+    share: f64,
+    gmin: f64,
+    slot: impl Fn(usize) -> usize,
+) {
+    let State {
+        volts,
+        points,
+        f,
+        scale,
+        factors,
+        ..
+    } = state;
+    for (m, point) in circuit.mos.iter().zip(points.iter_mut()) {
+        let [d, g, s, b] = m.nodes;
+        let vb = volts[b];
+        let p = m.device.at(
+            (volts[g] - vb) * m.sign,
+            (volts[d] - vb) * m.sign,
+            (volts[s] - vb) * m.sign,
+        );
+        *point = p;
+        let id = p.id * m.sign;
+        let ib = p.ib * m.sign;
+        let [rd, rs, rb] = [circuit.row[d], circuit.row[s], circuit.row[b]];
+        // Columns in the order drain, gate, source, bulk.
+        let channel = [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm];
+        let [bg, bd, bs] = p.ib_slopes;
+        let impact = [bd, bg, bs, -(bd + bg + bs)];
+        if rd != NONE {
+            let r = rd as usize;
+            f[r] += id + ib;
+            scale[r] += (id + ib).abs();
+            for j in 0..4 {
+                if m.slots[j] != NONE {
+                    factors.add(slot(m.slots[j] as usize), channel[j] + impact[j]);
+                }
+            }
+        }
+        if rs != NONE {
+            let r = rs as usize;
+            f[r] -= id;
+            scale[r] += id.abs();
+            for j in 0..4 {
+                if m.slots[4 + j] != NONE {
+                    factors.add(slot(m.slots[4 + j] as usize), -channel[j]);
+                }
+            }
+        }
+        if rb != NONE {
+            let r = rb as usize;
+            f[r] -= ib;
+            for j in 0..4 {
+                if m.slots[8 + j] != NONE {
+                    factors.add(slot(m.slots[8 + j] as usize), -impact[j]);
+                }
+            }
+        }
+    }
+    for r in &circuit.resistors {
+        let [a, b] = r.nodes;
+        let i = (volts[a] - volts[b]) * r.conductance;
+        let signs = [1.0, -1.0, -1.0, 1.0];
+        for (k, sign) in signs.into_iter().enumerate() {
+            if r.slots[k] != NONE {
+                factors.add(slot(r.slots[k] as usize), r.conductance * sign);
+            }
+        }
+        for (node, sign) in [(a, 1.0), (b, -1.0)] {
+            let row = circuit.row[node];
+            if row != NONE {
+                f[row as usize] += i * sign;
+                scale[row as usize] += i.abs();
+            }
+        }
+    }
+    for s in &circuit.currents {
+        let i = s.amps * share;
+        for (node, sign) in [(s.nodes[0], 1.0), (s.nodes[1], -1.0)] {
+            let row = circuit.row[node];
+            if row != NONE {
+                f[row as usize] += i * sign;
+                scale[row as usize] += i.abs();
+            }
+        }
+    }
+    if gmin > 0.0 {
+        for (node, &row) in circuit.row.iter().enumerate() {
+            if row != NONE {
+                let r = row as usize;
+                let i = volts[node] * gmin;
+                f[r] += i;
+                scale[r] += i.abs();
+                factors.add(slot(circuit.diagonal[r] as usize), Lanes::splat(gmin));
+            }
+        }
+    }
+}
+
+struct Newton<'a> {
+    circuit: &'a Circuit,
+    state: &'a mut State,
+    share: f64,
+    gmin: f64,
+}
+
+impl Work for Newton<'_> {
+    type Answer = bool;
+
+    #[inline(always)]
+    fn run(self) -> bool {
+        let Newton {
+            circuit,
+            state,
+            share,
+            gmin,
+        } = self;
+        let plan = circuit.plan();
+        let mut step = Lanes::splat(f64::INFINITY);
+        state.iterations = 0;
+        loop {
+            state.iterations += 1;
+            state.prepare(circuit.n, circuit.mos.len());
+            plan.clear(&mut state.factors);
+            assemble(circuit, state, share, gmin, |e| plan.slot(e));
+            let mut residual = Lanes::ZERO;
+            for (f, scale) in state.f.iter().zip(&state.scale) {
+                residual = residual.max(f.abs() / (*scale + CURRENT_FLOOR));
+            }
+            let done: Mask = step
+                .lt(Lanes::splat(STEP_DONE))
+                .and(residual.lt(Lanes::splat(RESIDUAL_DONE)));
+            state.converged = done.0;
+            state.residual = residual.0;
+            if done.all() {
+                return true;
+            }
+            if state.iterations >= ITERATIONS {
+                return false;
+            }
+            plan.factor(&mut state.factors);
+            plan.solve(&state.factors, &mut state.f, &mut state.dx);
+            step = Lanes::ZERO;
+            let most = Lanes::splat(STEP_MOST);
+            for (node, &row) in circuit.row.iter().enumerate() {
+                if row != NONE {
+                    let d = state.dx[row as usize].min(most).max(-most);
+                    step = step.max(d.abs());
+                    state.volts[node] -= d;
+                }
+            }
+        }
+    }
+}
+
+struct Evaluate<'a> {
+    circuit: &'a Circuit,
+    state: &'a mut State,
+}
+
+impl Work for Evaluate<'_> {
+    type Answer = ();
+
+    #[inline(always)]
+    fn run(self) {
+        let Evaluate { circuit, state } = self;
+        let plan = circuit.plan();
+        state.prepare(circuit.n, circuit.mos.len());
+        plan.clear(&mut state.factors);
+        assemble(circuit, state, 1.0, 0.0, |e| plan.slot(e));
+    }
+}

@@ -1,0 +1,213 @@
+//! Derivatives of a solved circuit: conductance at a pin, and by one adjoint solution the
+//! sensitivity of a pin's current to every device (Director & Rohrer, IEEE Trans. Circuit
+//! Theory 16, 1969).
+
+use super::dc::{Circuit, State};
+use super::netlist::Node;
+use crate::numeric::dispatch::{Work, widest};
+use crate::numeric::lanes::Lanes;
+
+/// Sensitivities of one pin's current.
+#[derive(Debug, Clone, Default)]
+pub struct Sensitivity {
+    /// Per transistor: d I / d VT, S (all its units shifted alike).
+    pub threshold: Vec<Lanes>,
+    /// Per transistor: d I / d ln beta, A.
+    pub gain: Vec<Lanes>,
+    /// Per resistor: d I / d ln R, A.
+    pub resistor: Vec<Lanes>,
+}
+
+impl Circuit {
+    /// Factorises the Jacobian at the solution; the functions below need it.
+    pub fn linearise(&self, state: &mut State) {
+        if !state.factored {
+            widest(Factorise {
+                circuit: self,
+                state,
+            });
+            state.factored = true;
+        }
+    }
+
+    /// Current that flows from a node into the elements on it, A.
+    pub fn current_from(&self, state: &State, node: Node) -> Lanes {
+        let mut sum = Lanes::ZERO;
+        for (m, p) in self.mos.iter().zip(&state.points) {
+            if m.nodes[0] == node {
+                sum += (p.id + p.ib) * m.sign;
+            }
+            if m.nodes[2] == node {
+                sum -= p.id * m.sign;
+            }
+            if m.nodes[3] == node {
+                sum -= p.ib * m.sign;
+            }
+        }
+        for r in &self.resistors {
+            let [a, b] = r.nodes;
+            if a == node {
+                sum += (state.volts[a] - state.volts[b]) * r.conductance;
+            }
+            if b == node {
+                sum += (state.volts[b] - state.volts[a]) * r.conductance;
+            }
+        }
+        for s in &self.currents {
+            if s.nodes[0] == node {
+                sum += s.amps;
+            }
+            if s.nodes[1] == node {
+                sum -= s.amps;
+            }
+        }
+        sum
+    }
+
+    /// Visits d(current from `node`)/d(voltage of another node), element by element.
+    fn slopes_of(&self, state: &State, node: Node, mut visit: impl FnMut(Node, Lanes)) {
+        for (m, p) in self.mos.iter().zip(&state.points) {
+            let channel = [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm];
+            let [bg, bd, bs] = p.ib_slopes;
+            let impact = [bd, bg, bs, -(bd + bg + bs)];
+            if m.nodes[0] == node {
+                for j in 0..4 {
+                    visit(m.nodes[j], channel[j] + impact[j]);
+                }
+            }
+            if m.nodes[2] == node {
+                for j in 0..4 {
+                    visit(m.nodes[j], -channel[j]);
+                }
+            }
+            if m.nodes[3] == node {
+                for j in 0..4 {
+                    visit(m.nodes[j], -impact[j]);
+                }
+            }
+        }
+        for r in &self.resistors {
+            for (here, there) in [(r.nodes[0], r.nodes[1]), (r.nodes[1], r.nodes[0])] {
+                if here == node {
+                    visit(here, r.conductance);
+                    visit(there, -r.conductance);
+                }
+            }
+        }
+    }
+
+    /// dI/dV at a known node `pin`, A per volt: I is the current from the pin into the circuit.
+    /// Call [`Circuit::linearise`] first.
+    pub fn conductance_at(&self, state: &State, pin: Node) -> Lanes {
+        self.transfer(state, pin, pin)
+    }
+
+    /// d(current from known node `pin`)/d(voltage of known node `driven`), A per volt. Call
+    /// [`Circuit::linearise`] first.
+    pub fn transfer(&self, state: &State, pin: Node, driven: Node) -> Lanes {
+        let n = self.unknowns();
+        let mut direct = Lanes::ZERO;
+        let mut by_row = vec![Lanes::ZERO; n];
+        self.slopes_of(state, pin, |node, g| {
+            if node == driven {
+                direct += g;
+            }
+            if let Some(r) = self.row(node) {
+                by_row[r] += g;
+            }
+        });
+        // Residual slopes over the driven node, at every unknown node.
+        let mut rhs = vec![Lanes::ZERO; n];
+        self.driven_by(state, driven, &mut rhs);
+        let mut dv = vec![Lanes::ZERO; n];
+        self.plan().solve(&state.factors, &mut rhs, &mut dv);
+        for (g, d) in by_row.iter().zip(&dv) {
+            direct -= *g * *d;
+        }
+        direct
+    }
+
+    /// Adds d(residual)/d(voltage of `driven`) for every unknown node.
+    fn driven_by(&self, state: &State, driven: Node, rhs: &mut [Lanes]) {
+        for (m, p) in self.mos.iter().zip(&state.points) {
+            if !m.nodes.contains(&driven) {
+                continue;
+            }
+            let channel = [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm];
+            let [bg, bd, bs] = p.ib_slopes;
+            let impact = [bd, bg, bs, -(bd + bg + bs)];
+            for j in 0..4 {
+                if m.nodes[j] != driven {
+                    continue;
+                }
+                if let Some(r) = self.row(m.nodes[0]) {
+                    rhs[r] += channel[j] + impact[j];
+                }
+                if let Some(r) = self.row(m.nodes[2]) {
+                    rhs[r] -= channel[j];
+                }
+                if let Some(r) = self.row(m.nodes[3]) {
+                    rhs[r] -= impact[j];
+                }
+            }
+        }
+        for r in &self.resistors {
+            for (here, there) in [(r.nodes[0], r.nodes[1]), (r.nodes[1], r.nodes[0])] {
+                if there == driven
+                    && let Some(row) = self.row(here)
+                {
+                    rhs[row] -= r.conductance;
+                }
+            }
+        }
+    }
+
+    /// Sensitivity of the current from known node `pin` to every device. Call
+    /// [`Circuit::linearise`] first.
+    pub fn sensitivity(&self, state: &State, pin: Node) -> Sensitivity {
+        let n = self.unknowns();
+        let mut c = vec![Lanes::ZERO; n];
+        self.slopes_of(state, pin, |node, g| {
+            if let Some(r) = self.row(node) {
+                c[r] += g;
+            }
+        });
+        let mut y = vec![Lanes::ZERO; n];
+        self.plan().solve_transposed(&state.factors, &mut c, &mut y);
+        // dI = dI|direct - y . dF.
+        let weight = |node: Node| match self.row(node) {
+            Some(r) => -y[r],
+            None if node == pin => Lanes::ONE,
+            None => Lanes::ZERO,
+        };
+        let mut out = Sensitivity::default();
+        for (m, p) in self.mos.iter().zip(&state.points) {
+            let [d, _, s, b] = m.nodes;
+            let through = weight(d) - weight(s);
+            let into_bulk = weight(d) - weight(b);
+            let [bg, ..] = p.ib_slopes;
+            out.threshold
+                .push((-p.gm * through - bg * into_bulk) * m.sign);
+            out.gain.push((p.id * through + p.ib * into_bulk) * m.sign);
+        }
+        for r in &self.resistors {
+            let [a, b] = r.nodes;
+            let i = (state.volts[a] - state.volts[b]) * r.conductance;
+            out.resistor.push(-i * (weight(a) - weight(b)));
+        }
+        out
+    }
+}
+
+struct Factorise<'a> {
+    circuit: &'a Circuit,
+    state: &'a mut State,
+}
+
+impl Work for Factorise<'_> {
+    type Answer = ();
+    #[inline(always)]
+    fn run(self) {
+        self.circuit.plan().factor(&mut self.state.factors);
+    }
+}

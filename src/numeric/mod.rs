@@ -1,0 +1,5 @@
+//! Numerical building blocks; each file names its source. No electricity in here.
+
+pub mod dispatch;
+pub mod lanes;
+pub mod sparse;
