@@ -1,8 +1,10 @@
 //! biasloom: from a table of bias-current requirements to verified networks of MOS mirrors.
 
+pub mod cells;
 pub mod circuit;
 pub mod device;
 pub mod explore;
+pub mod network;
 pub mod numeric;
 pub mod process;
 pub mod spec;
