@@ -1,7 +1,9 @@
 //! biasloom: from a table of bias-current requirements to verified networks of MOS mirrors.
 
 pub mod circuit;
+pub mod diag;
 pub mod explore;
 pub mod process;
 pub mod spec;
 pub mod units;
+pub mod yaml;

@@ -5,7 +5,10 @@ use super::Curve;
 impl Curve {
     /// The same value at every length.
     pub fn constant(value: f64) -> Curve {
-        Curve { lengths: vec![0.0], values: vec![value] }
+        Curve {
+            lengths: vec![0.0],
+            values: vec![value],
+        }
     }
 
     /// Value at a drawn length in metres, SI units.
@@ -32,8 +35,8 @@ impl Curve {
         let t = (length / self.lengths[left]).ln() / step;
         // Hermite cubic on [0, 1]; tangents scaled to the interval.
         let (a, b) = (self.tangent(left) * step, self.tangent(left + 1) * step);
-        let value =
-            self.values[left] + t * (a + t * ((3.0 * rise - 2.0 * a - b) + t * (a + b - 2.0 * rise)));
+        let value = self.values[left]
+            + t * (a + t * ((3.0 * rise - 2.0 * a - b) + t * (a + b - 2.0 * rise)));
         // Rounding alone could step over a neighbour by one part in 1e16.
         let (low, high) = if rise < 0.0 {
             (self.values[left + 1], self.values[left])
@@ -63,8 +66,10 @@ impl Curve {
         if left * right <= 0.0 {
             return 0.0;
         }
-        let (before, after) =
-            ((self.lengths[i] / self.lengths[i - 1]).ln(), (self.lengths[i + 1] / self.lengths[i]).ln());
+        let (before, after) = (
+            (self.lengths[i] / self.lengths[i - 1]).ln(),
+            (self.lengths[i + 1] / self.lengths[i]).ln(),
+        );
         let parabola = (after * left + before * right) / (before + after);
         parabola.signum() * parabola.abs().min(3.0 * left.abs().min(right.abs()))
     }

@@ -8,7 +8,10 @@ use proptest::prelude::*;
 fn tables() -> impl Strategy<Value = Curve> {
     prop::collection::vec((0.05f64..1.5, -10.0f64..10.0), 2..9).prop_map(|rows| {
         let mut log_length = (0.1e-6f64).ln();
-        let mut curve = Curve { lengths: vec![], values: vec![] };
+        let mut curve = Curve {
+            lengths: vec![],
+            values: vec![],
+        };
         for (step, value) in rows {
             curve.lengths.push(log_length.exp());
             curve.values.push(value);
@@ -55,7 +58,10 @@ fn a_straight_line_over_ln_l_is_reproduced() {
     // would bend the law it interpolates.
     let curve = Curve {
         lengths: vec![0.2e-6, 0.5e-6, 1e-6, 5e-6],
-        values: [0.2f64, 0.5, 1.0, 5.0].iter().map(|l| 3.0 + 2.0 * l.ln()).collect(),
+        values: [0.2f64, 0.5, 1.0, 5.0]
+            .iter()
+            .map(|l| 3.0 + 2.0 * l.ln())
+            .collect(),
     };
     for l in [0.21, 0.3, 0.7, 2.0, 4.9] {
         assert!((curve.at(l * 1e-6) - (3.0 + 2.0 * f64::ln(l))).abs() < 1e-12);
