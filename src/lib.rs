@@ -3,9 +3,12 @@
 pub mod cells;
 pub mod circuit;
 pub mod device;
+pub mod diag;
 pub mod explore;
 pub mod network;
 pub mod numeric;
 pub mod process;
+pub mod search;
 pub mod spec;
 pub mod units;
+pub mod yaml;
