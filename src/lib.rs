@@ -1,5 +1,6 @@
 //! biasloom: from a table of bias-current requirements to verified networks of MOS mirrors.
 
+pub mod assembly;
 pub mod cells;
 pub mod circuit;
 pub mod device;
