@@ -3,5 +3,6 @@
 pub mod circuit;
 pub mod explore;
 pub mod process;
+pub mod report;
 pub mod spec;
 pub mod units;
