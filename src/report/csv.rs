@@ -38,8 +38,17 @@ fn render(outcome: &Outcome) -> Files {
     for shown in &networks {
         let network = shown.network;
         let mut row = vec![
-            if shown.fits { network.rank.to_string() } else { String::new() },
-            if network.broken.is_empty() { "yes" } else { "no" }.to_owned(),
+            if shown.fits {
+                network.rank.to_string()
+            } else {
+                String::new()
+            },
+            if network.broken.is_empty() {
+                "yes"
+            } else {
+                "no"
+            }
+            .to_owned(),
         ];
         for (name, unit) in &names {
             let scale = format::column_unit(unit).0;

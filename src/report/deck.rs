@@ -30,7 +30,12 @@ fn render(outcome: &Outcome) -> Files {
     let networks = view::networks(outcome);
     networks
         .iter()
-        .map(|shown| (format!("{}.cir", shown.stem()).into(), deck(outcome, shown).into_bytes()))
+        .map(|shown| {
+            (
+                format!("{}.cir", shown.stem()).into(),
+                deck(outcome, shown).into_bytes(),
+            )
+        })
         .collect()
 }
 
@@ -50,14 +55,23 @@ fn deck(outcome: &Outcome, shown: &view::Shown<'_>) -> String {
     ports.extend(source.references.iter().map(|&pin| node(pin)));
     ports.extend(source.outputs.iter().flatten().map(|&pin| node(pin)));
     text.comment("");
-    text.comment("The network. Ground is node 0. A parameter is the drawn size shared by equal units.");
+    text.comment(
+        "The network. Ground is node 0. A parameter is the drawn size shared by equal units.",
+    );
     text.card(&format!(".subckt {subcircuit} {}", ports.join(" ")));
     for (name, width, length) in &sizes.parameters {
-        text.more(&format!("w_{name}={} l_{name}={}", format::deck(*width), format::deck(*length)));
+        text.more(&format!(
+            "w_{name}={} l_{name}={}",
+            format::deck(*width),
+            format::deck(*length)
+        ));
     }
     let mut elements = Names::default();
     for mos in &source.netlist.mos {
-        let (model, size) = (&source.models[usize::from(mos.polarity == Polarity::P)], sizes.of(mos));
+        let (model, size) = (
+            &source.models[usize::from(mos.polarity == Polarity::P)],
+            sizes.of(mos),
+        );
         text.card(&format!(
             "{} {} {} {} {} {model} W={{w_{size}}} L={{l_{size}}} M={}",
             elements.element('M', &mos.name),
@@ -117,12 +131,20 @@ fn deck(outcome: &Outcome, shown: &view::Shown<'_>) -> String {
          range. I(V...) of a pin is negative where the network sinks and positive where it sources.",
     );
     text.card(&format!("Xnetwork {} {subcircuit}", ports.join(" ")));
-    text.card(&format!("Vsupply {} 0 {}", node(source.supply), format::deck(supply)));
+    text.card(&format!(
+        "Vsupply {} 0 {}",
+        node(source.supply),
+        format::deck(supply)
+    ));
     let mut bench = Names::default();
     bench.taken.insert("vsupply".to_owned());
     for &pin in &source.references {
         let name = bench.element('I', &format!("I_{}", node(pin)));
-        text.card(&format!("{name} 0 {} {}", node(pin), format::deck(source.reference_current)));
+        text.card(&format!(
+            "{name} 0 {} {}",
+            node(pin),
+            format::deck(source.reference_current)
+        ));
     }
     let mut probes = Vec::new();
     for (output, pins) in shown.network.outputs.iter().zip(&source.outputs) {
@@ -137,12 +159,19 @@ fn deck(outcome: &Outcome, shown: &view::Shown<'_>) -> String {
             probes.push(name);
         }
     }
-    text.card(&format!(".temp {}", format::number(source.nominal_temperature - 273.15)));
+    text.card(&format!(
+        ".temp {}",
+        format::number(source.nominal_temperature - 273.15)
+    ));
     text.card(".op");
     if let Some((first, others)) = probes.split_first() {
         // A hundred steps from rail to rail.
         let sweep = |name: &str| {
-            format!(".dc {name} 0 {} {}", format::deck(supply), format::deck(supply / 100.0))
+            format!(
+                ".dc {name} 0 {} {}",
+                format::deck(supply),
+                format::deck(supply / 100.0)
+            )
         };
         text.card(&sweep(first));
         text.card(&format!(".print dc I({first})"));
@@ -159,8 +188,11 @@ fn deck(outcome: &Outcome, shown: &view::Shown<'_>) -> String {
 
 fn header(text: &mut Lines, outcome: &Outcome, shown: &view::Shown<'_>) {
     let network = shown.network;
-    text.comment(&format!("{}: bias {}", outcome.spec.title, shown.title()));
-    text.comment(&format!("Spec {}, process card: {}", outcome.spec.name, outcome.card_title));
+    text.comment(&format!("{}: {}", outcome.spec.title, shown.title()));
+    text.comment(&format!(
+        "Spec {}, process card: {}",
+        outcome.spec.name, outcome.card_title
+    ));
     text.comment("");
     for caution in words::CAUTIONS {
         text.comment(caution);
@@ -181,7 +213,10 @@ fn header(text: &mut Lines, outcome: &Outcome, shown: &view::Shown<'_>) {
         text.comment(&line);
     }
     for broken in &network.broken {
-        text.comment(&format!("BREAKS A LIMIT: {}", words::broken_sentence(broken)));
+        text.comment(&format!(
+            "BREAKS A LIMIT: {}",
+            words::broken_sentence(broken)
+        ));
     }
     text.comment("");
     let mut models: Vec<&str> = Vec::new();
@@ -210,7 +245,8 @@ impl Lines {
         for line in words::wrap(&ascii(text), WIDTH - 2) {
             // A word that no line can hold is cut: a comment may lose its look, not the deck.
             for piece in line.as_bytes().chunks(WIDTH - 2) {
-                self.0.push_str(&format!("* {}\n", String::from_utf8_lossy(piece)));
+                self.0
+                    .push_str(&format!("* {}\n", String::from_utf8_lossy(piece)));
             }
         }
     }
@@ -223,7 +259,10 @@ impl Lines {
     }
     fn folded(&mut self, first: &str, text: &str) {
         for (index, line) in words::wrap(text, WIDTH - 2).iter().enumerate() {
-            self.0.push_str(&format!("{}{line}\n", if index == 0 { first } else { "+ " }));
+            self.0.push_str(&format!(
+                "{}{line}\n",
+                if index == 0 { first } else { "+ " }
+            ));
         }
     }
 }
@@ -233,8 +272,8 @@ fn ascii(text: &str) -> String {
     let mut plain = String::new();
     for letter in text.chars() {
         match letter {
-            'µ' | 'μ' => plain.push('u'),
-            'Ω' | 'Ω' => plain.push_str("Ohm"),
+            '\u{b5}' | '\u{3bc}' => plain.push('u'),
+            '\u{3a9}' | '\u{2126}' => plain.push_str("Ohm"),
             '°' => plain.push_str("deg "),
             '²' => plain.push('2'),
             '±' => plain.push_str("+-"),
@@ -252,10 +291,20 @@ fn ascii(text: &str) -> String {
 fn sanitised(name: &str, empty: &str) -> String {
     let clean: String = name
         .chars()
-        .map(|letter| if letter.is_ascii_alphanumeric() { letter } else { '_' })
+        .map(|letter| {
+            if letter.is_ascii_alphanumeric() {
+                letter
+            } else {
+                '_'
+            }
+        })
         .take(NAME_LENGTH)
         .collect();
-    if clean.is_empty() { empty.to_owned() } else { clean }
+    if clean.is_empty() {
+        empty.to_owned()
+    } else {
+        clean
+    }
 }
 
 /// Names already given away, in lower case.
@@ -287,8 +336,15 @@ impl Names {
     /// An element name that starts with its card's letter.
     fn element(&mut self, letter: char, name: &str) -> String {
         let clean = sanitised(name, "");
-        let starts = clean.chars().next().is_some_and(|first| first.eq_ignore_ascii_case(&letter));
-        self.unique(if starts { clean } else { format!("{letter}{clean}") })
+        let starts = clean
+            .chars()
+            .next()
+            .is_some_and(|first| first.eq_ignore_ascii_case(&letter));
+        self.unique(if starts {
+            clean
+        } else {
+            format!("{letter}{clean}")
+        })
     }
 }
 
@@ -304,8 +360,14 @@ struct Sizes<'a> {
 impl<'a> Sizes<'a> {
     fn new(shown: &view::Shown<'a>) -> Sizes<'a> {
         let devices = shown.network.devices.iter();
-        let families = devices.map(|row| (row.name.as_str(), row.family.as_str())).collect();
-        let mut sizes = Sizes { parameters: Vec::new(), stems: BTreeMap::new(), families };
+        let families = devices
+            .map(|row| (row.name.as_str(), row.family.as_str()))
+            .collect();
+        let mut sizes = Sizes {
+            parameters: Vec::new(),
+            stems: BTreeMap::new(),
+            families,
+        };
         let mut names = Names::default();
         for mos in &shown.network.deck.netlist.mos {
             let key = sizes.key(mos);
@@ -320,7 +382,12 @@ impl<'a> Sizes<'a> {
     }
     fn key(&self, mos: &Mos) -> (&'a str, Polarity, u64, u64) {
         let family = self.families.get(mos.name.as_str()).copied().unwrap_or("");
-        (family, mos.polarity, mos.width.to_bits(), mos.length.to_bits())
+        (
+            family,
+            mos.polarity,
+            mos.width.to_bits(),
+            mos.length.to_bits(),
+        )
     }
     fn of(&self, mos: &Mos) -> &str {
         self.stems.get(&self.key(mos)).map_or("", String::as_str)

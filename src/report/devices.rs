@@ -15,16 +15,35 @@ fn render(outcome: &Outcome) -> Files {
     let mut files = Files::new();
     for shown in view::networks(outcome) {
         let stem = shown.stem();
-        files.push((format!("{stem}-devices.csv").into(), comma(shown.network).into_bytes()));
-        files.push((format!("{stem}-devices.txt").into(), aligned(outcome, &shown).into_bytes()));
+        files.push((
+            format!("{stem}-devices.csv").into(),
+            comma(shown.network).into_bytes(),
+        ));
+        files.push((
+            format!("{stem}-devices.txt").into(),
+            aligned(outcome, &shown).into_bytes(),
+        ));
     }
     files
 }
 
 fn comma(network: &NetworkReport) -> String {
     let header = [
-        "element", "family", "role", "output", "model", "W_um", "L_um", "units", "unit_Ohm",
-        "current_uA", "IC", "VGS_V", "VDS_V", "VDSsat_V", "area_um2",
+        "element",
+        "family",
+        "role",
+        "output",
+        "model",
+        "W_um",
+        "L_um",
+        "units",
+        "unit_Ohm",
+        "current_uA",
+        "IC",
+        "VGS_V",
+        "VDS_V",
+        "VDSsat_V",
+        "area_um2",
     ];
     let optional = |value: Option<f64>| value.map(format::number).unwrap_or_default();
     let mut rows = vec![header.map(str::to_owned).to_vec()];
@@ -57,7 +76,11 @@ fn comma(network: &NetworkReport) -> String {
 
 /// Units of all devices together.
 pub fn units(network: &NetworkReport) -> u64 {
-    network.devices.iter().map(|device| u64::from(device.units)).sum()
+    network
+        .devices
+        .iter()
+        .map(|device| u64::from(device.units))
+        .sum()
 }
 
 /// Area of all devices together, m^2, added in the order of the table.
@@ -118,11 +141,19 @@ pub fn sum_cells(network: &NetworkReport) -> [String; COLUMNS.len()] {
 fn aligned(outcome: &Outcome, shown: &view::Shown<'_>) -> String {
     let header = COLUMNS.map(|(name, _)| name.to_owned()).to_vec();
     let mut rows = vec![header];
-    rows.extend(shown.network.devices.iter().map(|device| cells(device).to_vec()));
+    rows.extend(
+        shown
+            .network
+            .devices
+            .iter()
+            .map(|device| cells(device).to_vec()),
+    );
     let sum = sum_cells(shown.network).to_vec();
     let right = COLUMNS.map(|(_, right)| right);
     let mut text = format!("{}: devices of {}\n", outcome.spec.title, shown.title());
-    text.push_str("Sizes of one unit; currents, IC and voltages of all units at the nominal corner.\n");
+    text.push_str(
+        "Sizes of one unit; currents, IC and voltages of all units at the nominal corner.\n",
+    );
     text.push_str(&format!("Process card: {}\n\n", outcome.card_title));
     text.push_str(&columns(&rows, Some(&sum), &right));
     text.push('\n');

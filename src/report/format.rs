@@ -38,15 +38,25 @@ fn exponent(value: f64, digits: usize) -> i32 {
     // The `e` form rounds first, so 999.96 at three digits has exponent 3. Its exponent is a
     // plain integer by construction.
     let text = format!("{value:.*e}", digits - 1);
-    text.rsplit('e').next().and_then(|digits| digits.parse().ok()).unwrap_or(0)
+    text.rsplit('e')
+        .next()
+        .and_then(|digits| digits.parse().ok())
+        .unwrap_or(0)
 }
 
 /// `value` with at most `decimals` decimals, trailing zeros cut, and no negative zero.
 fn trimmed(value: f64, decimals: usize) -> String {
     let text = format!("{value:.decimals$}");
-    let text =
-        if text.contains('.') { text.trim_end_matches('0').trim_end_matches('.') } else { &text };
-    if text == "-0" { "0".to_owned() } else { text.to_owned() }
+    let text = if text.contains('.') {
+        text.trim_end_matches('0').trim_end_matches('.')
+    } else {
+        &text
+    };
+    if text == "-0" {
+        "0".to_owned()
+    } else {
+        text.to_owned()
+    }
 }
 
 /// Engineering notation with three significant digits: `10.0 uA`, `2.50 MOhm`, `0 A`.
@@ -68,7 +78,9 @@ pub fn engineering(value: f64, unit: &str) -> String {
         .unwrap_or(PREFIXES[0]);
     let scaled = value * 10f64.powi(-step);
     let decimals = (2 - (power - step)).clamp(0, 2) as usize;
-    format!("{scaled:.decimals$} {prefix}{unit}").trim_end().to_owned()
+    format!("{scaled:.decimals$} {prefix}{unit}")
+        .trim_end()
+        .to_owned()
 }
 
 /// An area in um2, thousands separated by spaces: `12 480 um2`, `84.0 um2`, `3.25 um2`.
@@ -87,17 +99,29 @@ pub fn area_number(square_metres: f64) -> String {
     let value = square_metres * 1e12;
     let decimals = (2 - exponent(value, 3)).clamp(0, 2) as usize;
     let text = format!("{value:.decimals$}");
-    let (sign, digits) = text.strip_prefix('-').map_or(("", text.as_str()), |rest| ("-", rest));
-    let (whole, rest) = digits.split_once('.').map_or((digits, ""), |(whole, rest)| (whole, rest));
-    let mut grouped = String::new();
-    for (index, digit) in whole.chars().enumerate() {
-        if index > 0 && (whole.len() - index) % 3 == 0 && whole.len() > 3 {
-            grouped.push(' ');
-        }
-        grouped.push(digit);
-    }
+    let (sign, digits) = text
+        .strip_prefix('-')
+        .map_or(("", text.as_str()), |rest| ("-", rest));
+    let (whole, rest) = digits.split_once('.').unwrap_or((digits, ""));
     let point = if rest.is_empty() { "" } else { "." };
-    format!("{sign}{grouped}{point}{rest}")
+    format!("{sign}{}{point}{rest}", grouped(whole))
+}
+
+/// A count with its thousands separated by spaces: `63 000`.
+pub fn count(number: u64) -> String {
+    grouped(&number.to_string())
+}
+
+/// Digits in groups of three.
+fn grouped(digits: &str) -> String {
+    let mut text = String::new();
+    for (index, digit) in digits.chars().enumerate() {
+        if index > 0 && (digits.len() - index).is_multiple_of(3) {
+            text.push(' ');
+        }
+        text.push(digit);
+    }
+    text
 }
 
 /// A drawn length in um, to the nanometre: `4.25 um`.
@@ -120,7 +144,11 @@ pub fn volts_number(value: f64) -> String {
     not_finite(value).map_or_else(
         || {
             let text = format!("{value:.3}");
-            if text == "-0.000" { "0.000".to_owned() } else { text }
+            if text == "-0.000" {
+                "0.000".to_owned()
+            } else {
+                text
+            }
         },
         str::to_owned,
     )
@@ -139,13 +167,17 @@ pub fn percent(fraction: f64) -> String {
     let value = fraction * 100.0;
     let decimals = match exponent(value, 3) {
         _ if value == 0.0 => 0,
-        power if power >= 1 => 1,
+        power if power >= 2 => 0,
+        1 => 1,
         power if power >= -1 => 2,
         -2 => 3,
         _ => 4,
     };
     let text = format!("{value:.decimals$}");
-    let zero = text.trim_start_matches('-').chars().all(|digit| matches!(digit, '0' | '.'));
+    let zero = text
+        .trim_start_matches('-')
+        .chars()
+        .all(|digit| matches!(digit, '0' | '.'));
     format!("{} %", if zero { "0" } else { &text })
 }
 
@@ -233,7 +265,11 @@ pub fn deck(value: f64) -> String {
         return "0".to_owned();
     }
     let power = exponent(value, 9);
-    match DECK_FACTORS.into_iter().rev().find(|&(_, step)| step <= power) {
+    match DECK_FACTORS
+        .into_iter()
+        .rev()
+        .find(|&(_, step)| step <= power)
+    {
         Some((factor, step)) if power < step + 3 => {
             let decimals = (8 - (power - step)).max(0) as usize;
             format!("{}{factor}", trimmed(value * 10f64.powi(-step), decimals))
@@ -251,10 +287,8 @@ pub fn typeset(text: &str) -> String {
         if index > 0 {
             let before = words[index - 1];
             let number = starts_number(before) && ends_number(before);
-            let group = word.get(..3).is_some_and(|head| head.bytes().all(|b| b.is_ascii_digit()))
-                && !word.get(3..4).is_some_and(|next| next.bytes().all(|b| b.is_ascii_digit()));
             printed.push(match () {
-                () if number && group => '\u{202f}',
+                () if number && is_group(word) => '\u{202f}',
                 () if number && is_unit(word) => '\u{a0}',
                 () => ' ',
             });
@@ -276,8 +310,36 @@ pub fn typeset(text: &str) -> String {
     printed
 }
 
+/// The words of a text, with a number and its unit, or the groups of one number, kept together.
+pub fn words(text: &str) -> Vec<String> {
+    let mut words: Vec<String> = Vec::new();
+    let mut before = "";
+    for word in text.split_whitespace() {
+        let number = starts_number(before) && ends_number(before);
+        match words.last_mut() {
+            Some(last) if number && (is_unit(word) || is_group(word)) => {
+                last.push(' ');
+                last.push_str(word);
+            }
+            _ => words.push(word.to_owned()),
+        }
+        before = word;
+    }
+    words
+}
+
+/// Three digits, perhaps with decimals or punctuation after them: a group of a longer number.
+fn is_group(word: &str) -> bool {
+    word.get(..3)
+        .is_some_and(|head| head.bytes().all(|byte| byte.is_ascii_digit()))
+        && !word
+            .get(3..4)
+            .is_some_and(|next| next.bytes().all(|byte| byte.is_ascii_digit()))
+}
+
 fn starts_number(word: &str) -> bool {
-    word.trim_start_matches(['-', '+', '(']).starts_with(|c: char| c.is_ascii_digit())
+    word.trim_start_matches(['-', '+', '('])
+        .starts_with(|c: char| c.is_ascii_digit())
 }
 
 fn ends_number(word: &str) -> bool {
@@ -286,14 +348,19 @@ fn ends_number(word: &str) -> bool {
 
 fn is_unit(word: &str) -> bool {
     let core = word.trim_end_matches([',', ';', ')', '.', ':']);
-    let base = core.strip_prefix(['a', 'f', 'p', 'n', 'u', 'm', 'k', 'M', 'G']).unwrap_or("");
+    let base = core
+        .strip_prefix(['a', 'f', 'p', 'n', 'u', 'm', 'k', 'M', 'G'])
+        .unwrap_or("");
     const BASES: [&str; 6] = ["A", "V", "W", "Ohm", "m", "m2"];
     matches!(core, "%" | "degC" | "K") || BASES.contains(&core) || BASES.contains(&base)
 }
 
 /// A unit as it is printed: "um2" becomes "µm²".
 pub fn printed_unit(unit: &str) -> String {
-    let unit = unit.replace("Ohm", "Ω").replace("degC", "°C").replace("m2", "m²");
+    let unit = unit
+        .replace("Ohm", "Ω")
+        .replace("degC", "°C")
+        .replace("m2", "m²");
     match unit.strip_prefix('u') {
         Some(rest) => format!("µ{rest}"),
         None => unit,

@@ -40,7 +40,10 @@ fn render(outcome: &Outcome) -> Files {
 
 /// The JSON Schema of `front.json`, generated from the types that are serialised.
 pub fn schema() -> Schema {
-    SchemaSettings::draft2020_12().for_serialize().into_generator().into_root_schema_for::<Document>()
+    SchemaSettings::draft2020_12()
+        .for_serialize()
+        .into_generator()
+        .into_root_schema_for::<Document>()
 }
 
 /// A number, or `null` where the value is not finite (an unbounded resistance).
@@ -519,7 +522,10 @@ impl Document {
                 Status::NothingFits { .. } => Ending::NothingFits,
             },
             sentence: words::status(outcome),
-            broken: words::broken(outcome).iter().map(BrokenLimit::from).collect(),
+            broken: words::broken(outcome)
+                .iter()
+                .map(BrokenLimit::from)
+                .collect(),
             card_title: outcome.card_title.clone(),
             spec: SpecAsUnderstood::from(&outcome.spec),
             front: outcome.front.iter().map(Network::from).collect(),
@@ -532,7 +538,10 @@ impl Document {
                 not_converged: work
                     .not_converged
                     .iter()
-                    .map(|(reason, count)| Failure { reason: reason.clone(), count: *count })
+                    .map(|(reason, count)| Failure {
+                        reason: reason.clone(),
+                        count: *count,
+                    })
                     .collect(),
                 rounds: work.rounds,
                 columns: work.columns,
@@ -561,13 +570,19 @@ impl From<&Broken> for BrokenLimit {
 
 impl From<units::Range<units::Volt>> for Interval {
     fn from(range: units::Range<units::Volt>) -> Interval {
-        Interval { least: Number(range.least.0), most: Number(range.most.0) }
+        Interval {
+            least: Number(range.least.0),
+            most: Number(range.most.0),
+        }
     }
 }
 
 impl From<[f64; 2]> for Interval {
     fn from([least, most]: [f64; 2]) -> Interval {
-        Interval { least: Number(least), most: Number(most) }
+        Interval {
+            least: Number(least),
+            most: Number(most),
+        }
     }
 }
 
@@ -585,7 +600,11 @@ impl From<&Spec> for SpecAsUnderstood {
             },
             corners: spec.corners.clone(),
             reference: spec.reference.into(),
-            outputs: spec.outputs.iter().map(|output| WantedOutput::new(spec, output)).collect(),
+            outputs: spec
+                .outputs
+                .iter()
+                .map(|output| WantedOutput::new(spec, output))
+                .collect(),
             limits: Budgets {
                 area: spec.limits.area.map(|limit| limit.0),
                 overhead_current: spec.limits.overhead_current.map(|limit| limit.0),
@@ -605,7 +624,13 @@ impl From<&Spec> for SpecAsUnderstood {
 impl From<Reference> for ReferenceSource {
     fn from(reference: Reference) -> ReferenceSource {
         match reference {
-            Reference::Current { current, flows, range, copies, tolerance } => ReferenceSource {
+            Reference::Current {
+                current,
+                flows,
+                range,
+                copies,
+                tolerance,
+            } => ReferenceSource {
                 kind: ReferenceKind::Current,
                 current: current.0,
                 flows: Some(match flows {

@@ -34,8 +34,14 @@ pub struct Format {
 }
 
 /// Every format, in the order they are listed.
-pub const FORMATS: [Format; 6] =
-    [page::FORMAT, csv::FORMAT, json::FORMAT, deck::FORMAT, devices::FORMAT, picture::FORMAT];
+pub const FORMATS: [Format; 6] = [
+    page::FORMAT,
+    csv::FORMAT,
+    json::FORMAT,
+    deck::FORMAT,
+    devices::FORMAT,
+    picture::FORMAT,
+];
 
 /// A format by its name.
 pub fn format_named(name: &str) -> Option<&'static Format> {
@@ -44,5 +50,8 @@ pub fn format_named(name: &str) -> Option<&'static Format> {
 
 /// Renders an outcome in every one of `formats`, in their order.
 pub fn render(outcome: &Outcome, formats: &[Format]) -> Files {
-    formats.iter().flat_map(|format| (format.render)(outcome)).collect()
+    formats
+        .iter()
+        .flat_map(|format| (format.render)(outcome))
+        .collect()
 }

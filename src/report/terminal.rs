@@ -9,9 +9,8 @@ const NARROWEST: usize = 40;
 
 /// The ranked networks and how the exploration ended, at most `width` columns wide.
 ///
-/// The table loses its columns from the least important one (cells, then the headroom margin,
-/// then the error's corner) until it fits; what is lost stands in every file format. When nothing
-/// fits, the nearest network's line is followed by one sentence per broken limit.
+/// Where a network's line is too long for the terminal, the error's corner and the cells stand on
+/// lines below it. When nothing fits, the nearest network's line is followed by one sentence per broken limit.
 pub fn summary(outcome: &Outcome, width: usize) -> String {
     let width = width.max(NARROWEST);
     let mut text = String::new();
@@ -32,13 +31,26 @@ pub fn summary(outcome: &Outcome, width: usize) -> String {
         if !broken.is_empty() {
             text.push('\n');
             let limits = if broken.len() == 1 { "Limit" } else { "Limits" };
-            paragraph(&mut text, &format!("{limits} the nearest network breaks, worst first:"), 0);
+            paragraph(
+                &mut text,
+                &format!("{limits} the nearest network breaks, worst first:"),
+                0,
+            );
             for broken in broken {
-                paragraph(&mut text, &format!("- {}", words::broken_sentence(broken)), 2);
+                paragraph(
+                    &mut text,
+                    &format!("- {}", words::broken_sentence(broken)),
+                    2,
+                );
             }
         }
     }
-    let failures: u64 = outcome.work.not_converged.iter().map(|(_, number)| number).sum();
+    let failures: u64 = outcome
+        .work
+        .not_converged
+        .iter()
+        .map(|(_, number)| number)
+        .sum();
     let work = &outcome.work;
     text.push('\n');
     paragraph(
@@ -62,40 +74,65 @@ pub fn summary(outcome: &Outcome, width: usize) -> String {
     text
 }
 
-/// One column: its header, whether it is right-aligned, and its importance (0 always stays).
-const COLUMNS: [(&str, bool, u8); 7] = [
-    ("rank", true, 0),
-    ("area", true, 0),
-    ("overhead current", true, 0),
-    ("worst error", true, 0),
-    ("at output, corner", false, 1),
-    ("headroom margin", true, 2),
-    ("cells", false, 3),
+/// Columns of the wide layout, and whether each is aligned to the right.
+const WIDE: [(&str, bool); 7] = [
+    ("rank", true),
+    ("area", true),
+    ("overhead current", true),
+    ("worst error", true),
+    ("at output, corner", false),
+    ("headroom margin", true),
+    ("cells", false),
+];
+
+/// Columns of the narrow layout; what is missing stands on a line of its own below each row.
+const NARROW: [(&str, bool); 5] = [
+    ("rank", true),
+    ("area", true),
+    ("overhead", true),
+    ("error", true),
+    ("margin", true),
 ];
 
 fn table(networks: &[view::Shown<'_>], width: usize) -> String {
-    let rows: Vec<[String; COLUMNS.len()]> = networks.iter().map(row).collect();
+    let rows: Vec<[String; WIDE.len()]> = networks.iter().map(row).collect();
+    let mut lines = vec![WIDE.map(|(name, _)| name.to_owned()).to_vec()];
+    lines.extend(rows.iter().map(|row| row.to_vec()));
+    let wide = columns(&lines, None, &WIDE.map(|(_, right)| right));
+    if wide.lines().all(|line| line.chars().count() <= width) {
+        return wide;
+    }
+    let mut lines = vec![NARROW.map(|(name, _)| name.to_owned()).to_vec()];
+    lines.extend(
+        rows.iter()
+            .map(|[rank, area, overhead, error, _, margin, _]| {
+                [rank, area, overhead, error, margin]
+                    .map(String::clone)
+                    .to_vec()
+            }),
+    );
+    let narrow = columns(&lines, None, &NARROW.map(|(_, right)| right));
     let mut text = String::new();
-    // Most columns first; the last layout is the narrowest there is.
-    for least_important in (0..=3).rev() {
-        let kept: Vec<usize> =
-            (0..COLUMNS.len()).filter(|&column| COLUMNS[column].2 <= least_important).collect();
-        let mut lines = vec![kept.iter().map(|&c| COLUMNS[c].0.to_owned()).collect::<Vec<_>>()];
-        lines.extend(rows.iter().map(|row| kept.iter().map(|&c| row[c].clone()).collect()));
-        let right: Vec<bool> = kept.iter().map(|&column| COLUMNS[column].1).collect();
-        text = columns(&lines, None, &right);
-        if text.lines().all(|line| line.chars().count() <= width) {
-            break;
+    for (index, line) in narrow.lines().enumerate() {
+        text.push_str(line);
+        text.push('\n');
+        // The header and its rule come first.
+        if let Some([.., at, _, cells]) = index.checked_sub(2).and_then(|index| rows.get(index)) {
+            let detail = format!("error at {at}; cells: {cells}");
+            for line in words::wrap(&detail, width - 6) {
+                text.push_str(&format!("      {line}\n"));
+            }
         }
     }
     text
 }
 
-fn row(shown: &view::Shown<'_>) -> [String; COLUMNS.len()] {
+fn row(shown: &view::Shown<'_>) -> [String; WIDE.len()] {
     let network = shown.network;
     let figure = |name: &str| {
-        view::figure(network, name)
-            .map_or("-".to_owned(), |figure| format::quantity(figure.value, &figure.unit))
+        view::figure(network, name).map_or("-".to_owned(), |figure| {
+            format::quantity(figure.value, &figure.unit)
+        })
     };
     let error = view::worst_error(network);
     let headroom = view::worst_headroom(network);
@@ -104,8 +141,12 @@ fn row(shown: &view::Shown<'_>) -> [String; COLUMNS.len()] {
         figure("area"),
         figure("overhead_current"),
         error.map_or("-".to_owned(), |output| format::percent(output.error)),
-        error.map_or("-".to_owned(), |output| format!("{}, {}", output.name, output.error_corner)),
-        headroom.map_or("-".to_owned(), |output| format::millivolts(output.headroom_margin)),
+        error.map_or("-".to_owned(), |output| {
+            format!("{}, {}", output.name, output.error_corner)
+        }),
+        headroom.map_or("-".to_owned(), |output| {
+            format::millivolts(output.headroom_margin)
+        }),
         words::cells(network),
     ]
 }

@@ -33,19 +33,43 @@ impl Shown<'_> {
     }
     /// The rank as text: its number, or "-" for the nearest network.
     pub fn rank(&self) -> String {
-        if self.fits { self.network.rank.to_string() } else { "-".to_owned() }
+        if self.fits {
+            self.network.rank.to_string()
+        } else {
+            "-".to_owned()
+        }
     }
 }
 
 /// The front in rank order; where it is empty, the nearest network if there is one.
 pub fn networks(outcome: &Outcome) -> Vec<Shown<'_>> {
-    let most = outcome.front.iter().map(|network| network.rank).max().unwrap_or(0);
+    let most = outcome
+        .front
+        .iter()
+        .map(|network| network.rank)
+        .max()
+        .unwrap_or(0);
     let digits = most.to_string().len().max(2);
     if outcome.front.is_empty() {
         let nearest = outcome.nearest.as_deref();
-        nearest.map(|network| Shown { network, fits: false, digits }).into_iter().collect()
+        nearest
+            .map(|network| Shown {
+                network,
+                fits: false,
+                digits,
+            })
+            .into_iter()
+            .collect()
     } else {
-        outcome.front.iter().map(|network| Shown { network, fits: true, digits }).collect()
+        outcome
+            .front
+            .iter()
+            .map(|network| Shown {
+                network,
+                fits: true,
+                digits,
+            })
+            .collect()
     }
 }
 
@@ -70,14 +94,26 @@ pub fn figure_names<'a>(networks: &[Shown<'a>]) -> Vec<(&'a str, &'a str)> {
 /// The output with the largest current error (the first of equals).
 pub fn worst_error(network: &NetworkReport) -> Option<&OutputReport> {
     network.outputs.iter().reduce(|worst, output| {
-        if output.error.total_cmp(&worst.error).is_gt() { output } else { worst }
+        if output.error.total_cmp(&worst.error).is_gt() {
+            output
+        } else {
+            worst
+        }
     })
 }
 
 /// The output with the least headroom margin (the first of equals).
 pub fn worst_headroom(network: &NetworkReport) -> Option<&OutputReport> {
     network.outputs.iter().reduce(|worst, output| {
-        if output.headroom_margin.total_cmp(&worst.headroom_margin).is_lt() { output } else { worst }
+        if output
+            .headroom_margin
+            .total_cmp(&worst.headroom_margin)
+            .is_lt()
+        {
+            output
+        } else {
+            worst
+        }
     })
 }
 
@@ -85,7 +121,11 @@ pub fn worst_headroom(network: &NetworkReport) -> Option<&OutputReport> {
 /// the overhead current, or by the area where it is the overhead current itself.
 pub fn axes(outcome: &Outcome) -> [String; 2] {
     let first = outcome.spec.trade.first().map_or("area", String::as_str);
-    let fallback = if first == "overhead_current" { "area" } else { "overhead_current" };
+    let fallback = if first == "overhead_current" {
+        "area"
+    } else {
+        "overhead_current"
+    };
     let second = outcome.spec.trade.get(1).map_or(fallback, String::as_str);
     [first.to_owned(), second.to_owned()]
 }

@@ -56,7 +56,8 @@ pub fn status(outcome: &Outcome) -> String {
             count(broken.len(), "limit")
         ),
         Status::NothingFits { .. } => {
-            "Nothing fits: no network meets the spec, and none comes near enough to show.".to_owned()
+            "Nothing fits: no network meets the spec, and none comes near enough to show."
+                .to_owned()
         }
     }
 }
@@ -75,19 +76,25 @@ pub fn broken_sentence(broken: &Broken) -> String {
         Some(output) => format!("{output}: {}", label(&broken.figure)),
         None => label(&broken.figure),
     };
-    let corner = broken.corner.as_ref().map(|corner| format!(" at {corner}")).unwrap_or_default();
-    let over = broken.value > broken.limit;
-    let amount = if broken.limit == 0.0 || !(broken.value / broken.limit).is_finite() {
-        String::new()
+    let corner = broken
+        .corner
+        .as_ref()
+        .map(|corner| format!(" at {corner}"))
+        .unwrap_or_default();
+    let way = if broken.value > broken.limit {
+        "above"
     } else {
-        let share = (broken.value - broken.limit).abs() / broken.limit.abs();
-        let way = if over { "over" } else { "short" };
-        format!(", {way} by {} of it", format::percent(share))
+        "below"
+    };
+    let share = (broken.value - broken.limit).abs() / broken.limit.abs();
+    let amount = if share.is_finite() {
+        format!("{} {way}", format::percent(share))
+    } else {
+        way.to_owned()
     };
     format!(
-        "{subject} is {}{corner}; the limit is {} {}{amount}.",
+        "{subject} is {}{corner}, {amount} its limit of {}.",
         format::quantity(broken.value, &broken.unit),
-        if over { "at most" } else { "at least" },
         format::quantity(broken.limit, &broken.unit),
     )
 }
@@ -120,12 +127,22 @@ pub fn accuracy(output: &Output) -> String {
 /// The reference as the spec understands it, one sentence without its full stop.
 pub fn reference(reference: &Reference) -> String {
     match *reference {
-        Reference::Current { current, flows, range, copies, tolerance } => {
+        Reference::Current {
+            current,
+            flows,
+            range,
+            copies,
+            tolerance,
+        } => {
             let flows = match flows {
                 Flow::IntoNetwork => "into the network",
                 Flow::OutOfNetwork => "out of the network",
             };
-            let copies = if copies == 1 { String::new() } else { format!("{copies} x ") };
+            let copies = if copies == 1 {
+                String::new()
+            } else {
+                format!("{copies} x ")
+            };
             let tolerance = if tolerance == 0.0 {
                 "exact".to_owned()
             } else {
@@ -155,8 +172,10 @@ pub fn cells(network: &NetworkReport) -> String {
             None => counts.push((&family.cell, 1)),
         }
     }
-    let parts: Vec<String> =
-        counts.iter().map(|(cell, number)| format!("{number} {}", label(cell))).collect();
+    let parts: Vec<String> = counts
+        .iter()
+        .map(|(cell, number)| format!("{number} {}", label(cell)))
+        .collect();
     parts.join(", ")
 }
 
@@ -184,11 +203,12 @@ pub fn work(outcome: &Outcome) -> Vec<(String, u64)> {
     rows
 }
 
-/// Wraps text at spaces to lines of at most `width` characters; a longer word keeps its own line.
+/// Wraps text at spaces to lines of at most `width` characters; a longer word keeps its own line,
+/// and a number stays with its unit.
 pub fn wrap(text: &str, width: usize) -> Vec<String> {
     let mut lines = Vec::new();
     let mut line = String::new();
-    for word in text.split_whitespace() {
+    for word in format::words(text) {
         let needed = line.chars().count() + usize::from(!line.is_empty()) + word.chars().count();
         if !line.is_empty() && needed > width {
             lines.push(std::mem::take(&mut line));
@@ -196,7 +216,7 @@ pub fn wrap(text: &str, width: usize) -> Vec<String> {
         if !line.is_empty() {
             line.push(' ');
         }
-        line.push_str(word);
+        line.push_str(&word);
     }
     if !line.is_empty() {
         lines.push(line);

@@ -15,7 +15,7 @@ use std::path::{Component, Path, PathBuf};
 /// Name of the list of files written, one relative path a line.
 pub const LIST: &str = ".biasloom-files";
 
-/// Why a report could not be written. The folder holds what it held before.
+/// Why a report could not be written.
 #[derive(Debug, thiserror::Error)]
 pub enum WriteError {
     /// The target exists and is no folder.
@@ -47,7 +47,9 @@ pub enum WriteError {
 /// Afterwards the folder holds exactly the files given, their list, and what others put there.
 ///
 /// # Errors
-/// Any [`WriteError`]; the folder's content is then what it was before.
+/// Any [`WriteError`]; the folder's content is then what it was before. One failure comes later:
+/// where the old folder cannot be cleared away after the exchange, the new files are in place and
+/// the next run clears it.
 pub fn write(folder: &Path, files: &[(PathBuf, Vec<u8>)]) -> Result<(), WriteError> {
     write_watched(folder, files, &mut |_| Ok(()))
 }
@@ -117,12 +119,19 @@ fn write_watched(
 }
 
 fn system<'a>(action: &'static str, path: &'a Path) -> impl FnOnce(io::Error) -> WriteError + 'a {
-    move |source| WriteError::System { action, path: path.to_owned(), source }
+    move |source| WriteError::System {
+        action,
+        path: path.to_owned(),
+        source,
+    }
 }
 
 /// Writes a file and waits until the disk has it.
 fn save(path: &Path, bytes: &[u8]) -> io::Result<()> {
-    let mut file = fs::OpenOptions::new().write(true).create_new(true).open(path)?;
+    let mut file = fs::OpenOptions::new()
+        .write(true)
+        .create_new(true)
+        .open(path)?;
     io::Write::write_all(&mut file, bytes)?;
     file.sync_all()
 }
@@ -165,13 +174,13 @@ impl Place {
         let folder = match fs::canonicalize(folder) {
             Ok(real) => real,
             Err(error) if error.kind() == io::ErrorKind::NotFound => {
-                let absolute =
-                    std::path::absolute(folder).map_err(system("find", folder))?;
+                let absolute = std::path::absolute(folder).map_err(system("find", folder))?;
                 let parent = absolute.parent().unwrap_or(&absolute).to_owned();
                 fs::create_dir_all(&parent).map_err(system("make", &parent))?;
                 let parent = fs::canonicalize(&parent).map_err(system("find", &parent))?;
                 let name = absolute.file_name();
-                name.map(|name| parent.join(name)).ok_or(WriteError::InUse(parent))?
+                name.map(|name| parent.join(name))
+                    .ok_or(WriteError::InUse(parent))?
             }
             Err(source) => return Err(system("find", folder)(source)),
         };
@@ -185,7 +194,12 @@ impl Place {
         match (folder.parent(), folder.file_name()) {
             (Some(parent), Some(name)) => {
                 let (parent, name) = (parent.to_owned(), name.to_owned());
-                let mut place = Place { folder, parent, name, waiting: PathBuf::new() };
+                let mut place = Place {
+                    folder,
+                    parent,
+                    name,
+                    waiting: PathBuf::new(),
+                };
                 place.waiting = place.parent.join(place.hidden("old"));
                 Ok(place)
             }
@@ -239,6 +253,17 @@ impl Place {
     fn clear_waiting(&self) -> Result<(), WriteError> {
         let own = listed(&self.waiting)?;
         self.carry(Path::new(""), &own)?;
+        // Our files go first and their list last, so that a crash in between never leaves one
+        // that the next run would take for somebody else's.
+        for path in &own {
+            let path = self.waiting.join(path);
+            match fs::remove_file(&path) {
+                Err(error) if error.kind() != io::ErrorKind::NotFound => {
+                    return Err(system("delete", &path)(error));
+                }
+                _ => {}
+            }
+        }
         fs::remove_dir_all(&self.waiting).map_err(system("delete", &self.waiting))
     }
 
@@ -266,7 +291,7 @@ impl Place {
                 if new.is_dir() {
                     self.carry(&path, own)?;
                 }
-            } else {
+            } else if fs::symlink_metadata(&new).is_err() {
                 fs::rename(&old, &new).map_err(system("keep", &new))?;
             }
         }
@@ -276,7 +301,9 @@ impl Place {
 
 /// Whether anything below `inside` is not of our own.
 fn holds_foreign(root: &Path, inside: &Path, own: &BTreeSet<String>) -> bool {
-    let Ok(entries) = fs::read_dir(root.join(inside)) else { return false };
+    let Ok(entries) = fs::read_dir(root.join(inside)) else {
+        return false;
+    };
     entries.filter_map(Result::ok).any(|entry| {
         let path = inside.join(entry.file_name());
         if entry.file_type().is_ok_and(|kind| kind.is_dir()) {
@@ -319,13 +346,21 @@ mod tests {
     }
 
     fn set(tag: &str) -> Vec<(PathBuf, Vec<u8>)> {
-        ["a.txt", "b.txt", "deep/c.txt"].map(|path| (path.into(), tag.into())).into()
+        ["a.txt", "b.txt", "deep/c.txt"]
+            .map(|path| (path.into(), tag.into()))
+            .into()
     }
 
     /// A failure at every point of the way leaves the old files and nothing beside them.
     #[test]
     fn a_failed_write_changes_nothing() {
-        let steps = [Step::File(0), Step::File(1), Step::File(2), Step::Staged, Step::MadeWay];
+        let steps = [
+            Step::File(0),
+            Step::File(1),
+            Step::File(2),
+            Step::Staged,
+            Step::MadeWay,
+        ];
         for failing in steps {
             let root = tempfile::tempdir().unwrap();
             let folder = root.path().join("out");
@@ -333,9 +368,16 @@ mod tests {
             fs::write(folder.join("notes.txt"), "mine").unwrap();
             let before = content(root.path());
             let result = write_watched(&folder, &set("new"), &mut |step| {
-                if step == failing { Err(io::Error::other("cut short")) } else { Ok(()) }
+                if step == failing {
+                    Err(io::Error::other("cut short"))
+                } else {
+                    Ok(())
+                }
             });
-            assert!(matches!(result, Err(WriteError::System { .. })), "{failing:?}");
+            assert!(
+                matches!(result, Err(WriteError::System { .. })),
+                "{failing:?}"
+            );
             assert_eq!(content(root.path()), before, "{failing:?}");
         }
     }

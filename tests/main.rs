@@ -1,0 +1,3 @@
+//! All integration tests, one module per part of the program.
+
+mod report;
