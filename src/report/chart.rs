@@ -15,8 +15,8 @@ pub const STYLE: &str = "\
 .chart .steps{stroke:var(--sink);stroke-width:1.25;fill:none;opacity:.5}\
 .chart .limit{stroke:var(--bad);stroke-width:1;stroke-dasharray:5 3;fill:none}\
 .chart .limit-name{fill:var(--bad)}\
-.chart .point circle{fill:var(--sheet);stroke:var(--sink);stroke-width:2}\
-.chart .point.chosen circle{fill:var(--sink)}\
+.chart .point .dot{fill:var(--sheet);stroke:var(--sink);stroke-width:2}\
+.chart .point.chosen .dot{fill:var(--sink)}\
 .chart .point text{fill:var(--ink)}";
 
 /// Colours on light and dark paper, as custom properties.
@@ -138,9 +138,9 @@ fn px(value: f64) -> String {
     format!("{value:.1}")
 }
 
-/// The front over its two trade figures, `width` by `height` pixels, the first network chosen.
+/// The front over its two trade figures, `width` by `height` pixels, one network `chosen`.
 /// Without networks, a sentence in place of the chart.
-pub fn front(outcome: &Outcome, width: f64, height: f64) -> Markup {
+pub fn front(outcome: &Outcome, width: f64, height: f64, chosen: Option<usize>) -> Markup {
     let networks = view::networks(outcome);
     let [across, up] = view::axes(outcome);
     let value = |shown: &view::Shown<'_>, name: &str| {
@@ -166,7 +166,7 @@ pub fn front(outcome: &Outcome, width: f64, height: f64) -> Markup {
     };
     let x_axis = axis(&across, (width / 110.0) as usize);
     let y_axis = axis(&up, (height / 60.0) as usize);
-    let (left, right, top, bottom) = (52.0, width - 18.0, 30.0, height - 40.0);
+    let (left, right, top, bottom) = (52.0, width - 24.0, 30.0, height - 40.0);
     let x = |place: f64| left + place * (right - left);
     let y = |place: f64| bottom - place * (bottom - top);
     let mut points: Vec<(usize, &view::Shown<'_>, f64, f64)> = Vec::new();
@@ -226,8 +226,8 @@ pub fn front(outcome: &Outcome, width: f64, height: f64) -> Markup {
                 path.steps d=(steps) {}
             }
             @for (index, shown, x, y) in &points {
-                g.point.chosen[*index == 0] {
-                    circle cx=(px(*x)) cy=(px(*y)) r="5" {}
+                g.point.chosen[chosen == Some(*index)] {
+                    circle.dot cx=(px(*x)) cy=(px(*y)) r="5" {}
                     text x=(px(x + 8.0)) y=(px(y - 7.0)) { (shown.rank()) }
                     title { (shown.title()) }
                 }

@@ -297,7 +297,9 @@ pub fn typeset(text: &str) -> String {
         let tail = &word[core.len()..];
         let after_number =
             index > 0 && starts_number(words[index - 1]) && ends_number(words[index - 1]);
-        if after_number && is_unit(word) {
+        if after_number && word == "x" {
+            printed.push('\u{d7}');
+        } else if after_number && is_unit(word) {
             printed.push_str(&printed_unit(core));
         } else if let Some(number) = core.strip_prefix('-').filter(|rest| starts_number(rest)) {
             printed.push('\u{2212}');

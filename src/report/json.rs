@@ -33,9 +33,39 @@ fn render(outcome: &Outcome) -> Files {
     let document = serde_json::to_string_pretty(&Document::new(outcome)).unwrap_or_default();
     let schema = serde_json::to_string_pretty(&schema()).unwrap_or_default();
     vec![
-        ("front.json".into(), (document + "\n").into_bytes()),
+        ("front.json".into(), (rows(&document) + "\n").into_bytes()),
         ("front.schema.json".into(), (schema + "\n").into_bytes()),
     ]
+}
+
+/// Indented JSON with every list of plain numbers on one line: a curve is read, and compared, as
+/// a row.
+fn rows(indented: &str) -> String {
+    let mut text = String::with_capacity(indented.len());
+    let mut lines = indented.lines().peekable();
+    while let Some(line) = lines.next() {
+        if !text.is_empty() {
+            text.push('\n');
+        }
+        text.push_str(line);
+        let number = |line: &str| {
+            let word = line.trim().trim_end_matches(',');
+            word == "null" || word.starts_with(|c: char| c == '-' || c.is_ascii_digit())
+        };
+        if line.ends_with('[') && lines.peek().is_some_and(|next| number(next)) {
+            // Lists are of one kind, so the rest is numbers up to the bracket.
+            while let Some(line) = lines.next_if(|line| number(line)) {
+                text.push_str(line.trim());
+                if line.ends_with(',') {
+                    text.push(' ');
+                }
+            }
+            if let Some(end) = lines.next() {
+                text.push_str(end.trim());
+            }
+        }
+    }
+    text
 }
 
 /// The JSON Schema of `front.json`, generated from the types that are serialised.
@@ -46,7 +76,7 @@ pub fn schema() -> Schema {
         .into_root_schema_for::<Document>()
 }
 
-/// A number, or `null` where the value is not finite (an unbounded resistance).
+/// A number, or `null` where the value is not finite (an unbounded resistance) or does not apply.
 #[derive(Debug, Clone, Copy, Serialize)]
 #[serde(transparent)]
 struct Number(f64);
@@ -57,10 +87,14 @@ impl JsonSchema for Number {
     }
     fn json_schema(_: &mut SchemaGenerator) -> Schema {
         json_schema!({
-            "description": "SI value; null where it is not finite",
+            "description": "SI value; null where it is not finite or does not apply",
             "type": ["number", "null"],
         })
     }
+}
+
+fn optional(value: Option<f64>) -> Number {
+    Number(value.unwrap_or(f64::NAN))
 }
 
 fn numbers(values: &[f64]) -> Vec<Number> {
@@ -385,17 +419,17 @@ struct Device {
     /// Units in parallel.
     units: u32,
     /// Resistance of one unit, Ohm (resistors only).
-    ohms: Option<Number>,
+    ohms: Number,
     /// Current of all units at the nominal corner, A.
     current: Number,
     /// Inversion coefficient at the nominal corner.
-    inversion: Option<Number>,
+    inversion: Number,
     /// |VGS| at the nominal corner, V.
-    vgs: Option<Number>,
+    vgs: Number,
     /// |VDS| at the nominal corner, V.
-    vds: Option<Number>,
+    vds: Number,
     /// Saturation voltage at the nominal corner, V.
-    vdssat: Option<Number>,
+    vdssat: Number,
     /// Area of all units, m2.
     area: Number,
 }
@@ -421,7 +455,7 @@ struct NetworkOutput {
     /// Worst current error, fraction.
     error: Number,
     /// Its limit.
-    error_limit: Option<Number>,
+    error_limit: Number,
     /// Standard deviations of mismatch in the error.
     sigma: Number,
     /// Corner of the worst error.
@@ -439,7 +473,7 @@ struct NetworkOutput {
     /// Output resistance at the low end of the range, worst corner, Ohm.
     output_resistance: Number,
     /// Its limit, Ohm.
-    output_resistance_limit: Option<Number>,
+    output_resistance_limit: Number,
     /// Corner of the least output resistance.
     output_resistance_corner: String,
     /// Output current against voltage.
@@ -731,12 +765,12 @@ impl From<&DeviceRow> for Device {
             width: Number(device.width),
             length: Number(device.length),
             units: device.units,
-            ohms: device.ohms.map(Number),
+            ohms: optional(device.ohms),
             current: Number(device.current),
-            inversion: device.inversion.map(Number),
-            vgs: device.vgs.map(Number),
-            vds: device.vds.map(Number),
-            vdssat: device.vdssat.map(Number),
+            inversion: optional(device.inversion),
+            vgs: optional(device.vgs),
+            vds: optional(device.vds),
+            vdssat: optional(device.vdssat),
             area: Number(device.area),
         }
     }
@@ -758,7 +792,7 @@ impl From<&OutputReport> for NetworkOutput {
             units: output.units,
             target: Number(output.target),
             error: Number(output.error),
-            error_limit: output.error_limit.map(Number),
+            error_limit: optional(output.error_limit),
             sigma: Number(output.sigma),
             error_corner: output.error_corner.clone(),
             budget: output.budget.iter().map(part).collect(),
@@ -767,7 +801,7 @@ impl From<&OutputReport> for NetworkOutput {
             headroom_margin: Number(output.headroom_margin),
             headroom_corner: output.headroom_corner.clone(),
             output_resistance: Number(output.output_resistance),
-            output_resistance_limit: output.output_resistance_limit.map(Number),
+            output_resistance_limit: optional(output.output_resistance_limit),
             output_resistance_corner: output.output_resistance_corner.clone(),
             curve: Curve {
                 volts: numbers(&output.curve.volts),

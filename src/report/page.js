@@ -104,7 +104,8 @@
     const value = (network, axis) => network.values[axes[axis]];
     const horizontal = around(data.networks.map(n => value(n, 0)), across.unit, Math.max(2, Math.floor(width / 110)));
     const vertical = around(data.networks.map(n => value(n, 1)), up.unit, Math.max(2, Math.floor(height / 60)));
-    const left = 14 + Math.max(...vertical.list.map(([, text]) => measure(text))), right = width - 18;
+    const left = 14 + Math.max(...vertical.list.map(([, text]) => measure(text)));
+    const right = width - Math.max(14, 3 + measure(horizontal.list[horizontal.list.length - 1][1]) / 2);
     const top = 30, bottom = height - 40;
     const x = drawn => left + (drawn - horizontal.least) / (horizontal.most - horizontal.least) * (right - left);
     const y = drawn => bottom - (drawn - vertical.least) / (vertical.most - vertical.least) * (bottom - top);
@@ -114,9 +115,9 @@
       picture.append(line('grid', `M${px(x(at))} ${top}V${bottom}`), word(x(at), bottom + 16, text, { 'text-anchor': 'middle' }));
     }
     for (const [at, text] of vertical.list) {
-      picture.append(line('grid', `M${px(left)} ${px(y(at))}H${right}`), word(left - 7, y(at) + 4, text, { 'text-anchor': 'end' }));
+      picture.append(line('grid', `M${px(left)} ${px(y(at))}H${px(right)}`), word(left - 7, y(at) + 4, text, { 'text-anchor': 'end' }));
     }
-    picture.append(line('axis', `M${px(left)} ${top}V${bottom}H${right}`),
+    picture.append(line('axis', `M${px(left)} ${top}V${bottom}H${px(right)}`),
       word(right, height - 6, `${across.label}, ${horizontal.name}`, { class: 'name', 'text-anchor': 'end' }),
       word(2, 14, `${up.label}, ${vertical.name}`, { class: 'name' }));
     if (across.limit !== null) {
@@ -128,7 +129,7 @@
     if (up.limit !== null) {
       const at = up.limit * vertical.scale;
       if (at >= vertical.least && at <= vertical.most) {
-        picture.append(line('limit', `M${px(left)} ${px(y(at))}H${right}`), word(right - 5, y(at) - 5, 'limit', { class: 'limit-name', 'text-anchor': 'end' }));
+        picture.append(line('limit', `M${px(left)} ${px(y(at))}H${px(right)}`), word(right - 5, y(at) - 5, 'limit', { class: 'limit-name', 'text-anchor': 'end' }));
       }
     }
     const points = data.networks
@@ -151,8 +152,8 @@
       if (spot) taken.push([spot[0], spot[1] - 10, spot[0] + wide, spot[1] + 1]);
       const mark = draw('g', { class: 'point', 'data-index': index, tabindex: 0, role: 'button',
         'aria-label': `${network.title}: ${network.summary.map(pair => pair.join(' ')).join('; ')}` },
-        draw('circle', { class: 'halo', cx: px(point.x), cy: px(point.y), r: 10, style: 'fill:transparent;stroke:none' }),
-        draw('circle', { class: 'ring', cx: px(point.x), cy: px(point.y), r: 9, style: 'fill:none' }),
+        draw('circle', { class: 'halo', cx: px(point.x), cy: px(point.y), r: 12 }),
+        draw('circle', { class: 'ring', cx: px(point.x), cy: px(point.y), r: 9 }),
         draw('circle', { class: 'dot', cx: px(point.x), cy: px(point.y), r: 5 }),
         spot ? word(spot[0], spot[1], network.rank) : null);
       mark.addEventListener('click', () => choose(index));
@@ -183,11 +184,17 @@
       ...point.network.summary.map(([name, text]) => el('div', null, el('dt', null, name), el('dd', null, text)))));
     box.hidden = false;
     const leftmost = chart.offsetLeft, wide = box.offsetWidth, high = box.offsetHeight;
-    let x = point.x + 14;
-    if (x + wide > width) x = Math.max(0, point.x - 14 - wide);
-    if (x < point.x && x + wide > point.x - 8 && point.x + 14 + wide > width) x = Math.max(0, width - wide);
-    let y = point.y + 14;
-    if (y + high > chart.offsetHeight + 60 && point.y - 14 - high > -chart.offsetTop) y = point.y - 14 - high;
+    // Where less is better on both axes nothing lies above and to the right of a point of the
+    // front, nor below and to its left.
+    let x = point.x + 14, y = Math.max(-24, point.y - 12 - high);
+    if (x + wide > width) {
+      x = point.x - 14 - wide;
+      y = point.y + 12;
+      if (x < 0) {
+        x = Math.max(0, Math.min(width - wide, point.x - wide / 2));
+        if (point.y - 14 - high > -chart.offsetTop) y = point.y - 14 - high;
+      }
+    }
     box.style.left = `${leftmost + x}px`;
     box.style.top = `${chart.offsetTop + y}px`;
     mark('near', point.index, true);
@@ -217,7 +224,7 @@
   // Sources hang from the supply rail, sinks stand on ground; what feeds what runs in between.
   function drawTree(network) {
     const place = byId('tree');
-    const BOX = 60, LINE = 18, GAP = 26, PORT = 56;
+    const BOX = 60, LINE = 18, PORT = 52;
     const families = network.tree.map(family => ({ ...family }));
     const named = new Map(families.map(family => [family.name, family]));
     for (const family of families) {
@@ -232,11 +239,17 @@
     const rows = { true: [], false: [] };
     const walk = family => { rows[family.source].push(family); family.children.forEach(walk); };
     families.filter(family => !family.parent).forEach(walk);
-    const referenceWidth = Math.ceil(measure(network.reference)) + 24;
+    const referenceWidth = Math.ceil(measure(network.reference, 12, 600)) + 26;
+    const room = byId('network').clientWidth - 2 - 40;
+    const widths = row => row.reduce((sum, family) => sum + family.width, 0);
+    const gaps = [rows.true, rows.false].filter(row => row.length > 1).map(row => (room - widths(row)) / (row.length - 1));
+    const GAP = Math.floor(Math.max(10, Math.min(26, ...gaps)));
     const total = row => row.reduce((sum, family) => sum + family.width + GAP, -GAP);
     const span = Math.max(total(rows.true), total(rows.false));
     const [base, other] = total(rows.true) >= total(rows.false) ? [rows.true, rows.false] : [rows.false, rows.true];
-    const MARGIN = 20;
+    const SIDE = 20;
+    const width = Math.floor(Math.max(byId('network').clientWidth - 2, span + 2 * SIDE, referenceWidth + 2 * SIDE));
+    const MARGIN = Math.floor((width - span) / 2);
     let x = MARGIN;
     for (const family of base) { family.x = x; x += family.width + GAP; }
     // The shorter row: each family as near to what it is wired to as its neighbours allow.
@@ -256,14 +269,14 @@
     const feeding = families.filter(family => family.children.length);
     const channel = 34 + 14 * feeding.length + 14;
     const railTop = 34, railBottom = railTop + 14 + highest(rows.true) + channel + highest(rows.false) + 14;
-    const width = Math.ceil(Math.max(span, referenceWidth) + 2 * MARGIN), height = railBottom + 30;
+    const height = railBottom + 30;
     const middle = railTop + 14 + highest(rows.true);
 
     const picture = draw('svg', { viewBox: `0 0 ${width} ${height}`, width, height, role: 'img',
       'aria-label': 'Which family feeds which; the same stands in the table of families below' });
     picture.append(
-      line('rail', `M${MARGIN} ${railTop}H${width - MARGIN}`), word(MARGIN, railTop - 8, 'supply', { class: 'soft' }),
-      line('rail', `M${MARGIN} ${railBottom}H${width - MARGIN}`), word(MARGIN, railBottom + 18, 'ground', { class: 'soft' }));
+      line('rail', `M${SIDE} ${railTop}H${width - SIDE}`), word(SIDE, railTop - 8, 'supply', { class: 'soft' }),
+      line('rail', `M${SIDE} ${railBottom}H${width - SIDE}`), word(SIDE, railBottom + 18, 'ground', { class: 'soft' }));
 
     // Ports: a place across for every wire, none of them shared.
     const used = [];
@@ -296,7 +309,7 @@
     for (const root of families.filter(family => !family.parent)) {
       // The reference comes in above or below all tracks, on the side of its family.
       const y = root.source ? middle + 18 : middle + channel - 12;
-      const start = Math.max(MARGIN, Math.min(root.entry - referenceWidth, width - MARGIN - referenceWidth));
+      const start = Math.max(SIDE, Math.min(root.entry - referenceWidth, width - SIDE - referenceWidth));
       picture.append(word(start, y + 4, network.reference, { style: 'font-weight:600' }));
       wires.append(line('wire ink', `M${px(start + referenceWidth - 18)} ${y}H${px(root.entry)}V${px(edge(root))}`), arrow(root.entry, edge(root), root.source, 'ink-fill'));
     }
@@ -327,15 +340,8 @@
 
   const fixed = (value, digits) => (Number.isFinite(value) ? value.toFixed(digits) : '–').replace('-', '−');
 
-  // A current near `target` with enough digits to see a tenth of a per cent.
-  const current = (amps, target) => {
-    const [scale, unit] = drawnUnit(Math.abs(target), 'A');
-    const drawn = amps * scale;
-    return `${fixed(drawn, Math.max(0, 3 - Math.floor(Math.log10(Math.abs(target) * scale))))}\u00a0${unit}`;
-  };
-
   function drawCurve(leg, width, reading) {
-    const height = 196, top = 16, bottom = height - 32;
+    const height = 198, top = 18, bottom = height - 32;
     const [scale, unit] = drawnUnit(leg.target, 'A');
     const target = leg.target * scale, limit = leg.error_limit;
     const inRange = leg.volts.map((v, index) => index).filter(index => leg.volts[index] >= leg.range[0] - 1e-9 && leg.volts[index] <= leg.range[1] + 1e-9);
@@ -350,6 +356,9 @@
     const left = 12 + Math.max(...vertical.list.map(([, text]) => measure(text, 11))), right = width - 8;
     const x = v => left + v / vMost * (right - left);
     const y = drawn => bottom - (drawn - least) / (most - least) * (bottom - top);
+    // Enough digits to see a tenth of a per cent.
+    const digits = Math.max(0, 3 - Math.floor(Math.log10(Math.abs(target) || 1)));
+    const current = amps => fixed(amps * scale, digits);
     const clip = `clip-${leg.name}`;
     const picture = draw('svg', { viewBox: `0 0 ${width} ${height}`, width, height, tabindex: 0, role: 'img',
       'aria-label': `Output current of ${leg.name} against its voltage; arrow keys read the curve` });
@@ -360,7 +369,7 @@
       picture.append(line('grid', `M${px(x(at))} ${top}V${bottom}`), word(x(at), bottom + 13, text, { 'text-anchor': x(at) > right - 8 ? 'end' : 'middle' }));
     }
     for (const [at, text] of vertical.list) {
-      picture.append(line('grid', `M${px(left)} ${px(y(at))}H${right}`), word(left - 5, y(at) + 4, text, { 'text-anchor': 'end' }));
+      picture.append(line('grid', `M${px(left)} ${px(y(at))}H${px(right)}`), word(left - 5, y(at) + 4, text, { 'text-anchor': 'end' }));
     }
     const plot = draw('g', { 'clip-path': `url(#${clip})` });
     const path = values => values.map((value, index) => `${index ? 'L' : 'M'}${px(x(leg.volts[index]))} ${px(y(value * scale))}`).join('');
@@ -369,27 +378,30 @@
     plot.append(draw('path', { class: 'band', d: `${path(leg.most)}${back}Z` }));
     if (limit) {
       const label = `±${fixed(limit * 100, limit < 0.0995 ? 1 : 0)}\u00a0%`;
-      plot.append(line('limit', `M${px(left)} ${px(y(target * (1 + limit)))}H${right}M${px(left)} ${px(y(target * (1 - limit)))}H${right}`));
+      plot.append(line('limit', `M${px(left)} ${px(y(target * (1 + limit)))}H${px(right)}M${px(left)} ${px(y(target * (1 - limit)))}H${px(right)}`));
       if (zoom === 'near') picture.append(word(right - 3, y(target * (1 - limit)) + 12, label, { class: 'limit-name', 'text-anchor': 'end' }));
     }
     plot.append(draw('path', { class: 'nominal', d: path(leg.nominal) }));
-    picture.append(plot, line('axis', `M${px(left)} ${top}V${bottom}H${right}`));
+    picture.append(plot, line('axis', `M${px(left)} ${top}V${bottom}H${px(right)}`));
     if (leg.headroom !== null && leg.headroom <= vMost) {
       const at = x(leg.headroom);
       picture.append(line('headroom', `M${px(at)} ${bottom}V${top + 4}`),
         draw('path', { class: 'strong', style: 'fill:var(--ink)', d: `M${px(at - 4)} ${bottom + 1}h8l-4 -7z` }));
     }
-    picture.append(word(2, 9, `current, ${unit}`), word(right, height - 4, leg.source ? 'volts below supply' : 'volts above ground', { 'text-anchor': 'end' }));
+    picture.append(word(2, 11, `current, ${unit}`), word(right, height - 4, leg.source ? 'volts below supply' : 'volts above ground', { 'text-anchor': 'end' }));
     // Reading the curve.
     const cross = line('cross', '');
     picture.append(cross);
+    const shown = word(right, 11, '', { class: 'strong', 'text-anchor': 'end' });
+    picture.append(shown);
     let at = -1;
     const read = index => {
       at = Math.max(0, Math.min(leg.volts.length - 1, index));
       cross.setAttribute('d', `M${px(x(leg.volts[at]))} ${top}V${bottom}`);
-      reading.textContent = `${fixed(leg.volts[at], 3)}\u00a0V: ${current(leg.nominal[at], leg.target)} (${current(leg.least[at], leg.target)} to ${current(leg.most[at], leg.target)})`;
+      shown.textContent = `${fixed(leg.volts[at], 3)}\u00a0V: ${current(leg.nominal[at])} (${current(leg.least[at])} to ${current(leg.most[at])})`;
+      reading.textContent = `${shown.textContent} ${unit}`;
     };
-    const stop = () => { cross.setAttribute('d', ''); reading.textContent = ''; };
+    const stop = () => { cross.setAttribute('d', ''); shown.textContent = ''; reading.textContent = ''; };
     picture.addEventListener('pointermove', event => {
       const box = picture.getBoundingClientRect();
       const volts = ((event.clientX - box.left) * width / box.width - left) / (right - left) * vMost;
@@ -407,11 +419,11 @@
   }
 
   function drawBudget(leg, width) {
-    const ROW = 17, top = 16;
+    const ROW = 17, top = 18;
     const systematic = leg.budget.filter(part => !part.random), random = leg.budget.filter(part => part.random);
     const shift = systematic.reduce((sum, part) => sum + part.value, 0);
     const rows = [...systematic, ...random];
-    const height = Math.max(196, top + ROW * (rows.length + 1) + 14);
+    const height = Math.max(198, top + ROW * (rows.length + 1) + 14);
     const texts = ['worst error', ...rows.map(part => part.label)];
     const left = Math.ceil(Math.max(...texts.map(text => measure(text, 11, 600)))) + 10;
     const valueWidth = Math.ceil(Math.max(...[leg.error_text, ...rows.map(part => part.text)].map(text => measure(text, 11, 600)))) + 8;
@@ -438,7 +450,7 @@
     picture.append(line('axis', `M${px(x(0))} ${top}V${end}`));
     if (leg.error_limit) {
       const at = x(leg.error_limit);
-      picture.append(line('limit', `M${px(at)} ${top - 2}V${end}`), word(Math.min(at, width - 14), 9, 'limit', { class: 'limit-name', 'text-anchor': 'middle' }));
+      picture.append(line('limit', `M${px(at)} ${top - 2}V${end}`), word(Math.min(at, width - 14), 11, 'limit', { class: 'limit-name', 'text-anchor': 'middle' }));
     }
     return picture;
   }
@@ -448,15 +460,14 @@
     place.replaceChildren(...network.legs.map(leg => {
       const reading = el('span', { class: 'reading', role: 'status' });
       const drawings = el('div', { class: 'drawings' });
-      const bad = [leg.error_limit !== null && leg.error > leg.error_limit, leg.headroom !== null && leg.headroom > leg.range[0] + 1e-9, false];
       const card = el('article', { class: leg.source ? 'leg source' : 'leg', id: `leg-${leg.name}` },
         el('div', { class: 'head' }, el('h3', null, `${leg.name}  ${leg.head}`), el('span', null, leg.served), reading),
         drawings,
-        el('div', { class: 'facts' }, ...leg.facts.map(([name, text, more], index) => el('div', { class: bad[index] ? 'bad' : null }, el('span', null, name), el('b', null, text), el('span', null, more)))));
+        el('div', { class: 'facts' }, ...leg.facts.map(([name, text, against, corner], index) => el('div', { class: leg.breaks[index] ? 'bad' : null }, el('span', null, name), el('b', null, text), el('span', null, `${against}; `), el('i', null, corner)))));
       card.fillIn = () => {
         const style = getComputedStyle(drawings);
         const columns = style.gridTemplateColumns.split(' ').length;
-        const width = Math.floor((drawings.clientWidth - (columns - 1) * 12) / columns);
+        const width = Math.max(180, Math.floor((drawings.clientWidth - (columns - 1) * 12) / columns));
         drawings.replaceChildren(drawCurve(leg, width, reading), drawBudget(leg, width));
       };
       return card;
@@ -493,10 +504,20 @@
     markChosen();
   }
 
+  // Brings the chosen row into its list without moving the page.
+  function reveal() {
+    const row = document.querySelector('#ranked tr.chosen'), list = row && row.closest('.list');
+    if (!list) return;
+    const above = row.offsetTop - list.querySelector('thead').offsetHeight, below = row.offsetTop + row.offsetHeight - list.clientHeight;
+    if (list.scrollTop > above) list.scrollTop = above;
+    if (list.scrollTop < below) list.scrollTop = below;
+  }
+
   function choose(index) {
     if (index === chosen || index < 0 || index >= data.networks.length) return;
     chosen = index;
     show();
+    reveal();
     history.replaceState(null, '', `#${data.networks[index].stem}`);
   }
 
@@ -532,6 +553,7 @@
   chosen = Math.max(0, named());
   drawFront();
   show();
+  reveal();
   let width = document.documentElement.clientWidth, waiting = 0;
   const redraw = () => { drawFront(); drawTree(data.networks[chosen]); for (const card of byId('legs').children) card.fillIn(); };
   addEventListener('resize', () => {

@@ -95,7 +95,10 @@ struct Leg {
     error_limit: Option<f64>,
     range: [f64; 2],
     headroom: Option<f64>,
-    facts: Vec<[String; 3]>,
+    /// Name, value, what it is held against, corner.
+    facts: Vec<[String; 4]>,
+    /// Which of the facts break a limit.
+    breaks: Vec<bool>,
     volts: Vec<f64>,
     nominal: Vec<f64>,
     least: Vec<f64>,
@@ -194,7 +197,11 @@ impl Network {
                 .iter()
                 .map(|family| Branch::new(network, family))
                 .collect(),
-            legs: network.outputs.iter().map(Leg::new).collect(),
+            legs: network
+                .outputs
+                .iter()
+                .map(|output| Leg::new(network, output))
+                .collect(),
             reference: print(format!("reference {current}")),
             stem,
         }
@@ -231,47 +238,45 @@ impl Branch {
 }
 
 impl Leg {
-    fn new(output: &OutputReport) -> Leg {
-        let against = |limit: Option<String>| limit.map_or("no limit".to_owned(), print);
+    fn new(network: &NetworkReport, output: &OutputReport) -> Leg {
+        let breaks = ["current_error", "headroom", "output_resistance"].map(|figure| {
+            let mut broken = network.broken.iter();
+            broken.any(|broken| {
+                broken.figure == figure && broken.output.as_ref() == Some(&output.name)
+            })
+        });
+        let limit = |word: &str, limit: Option<String>| {
+            limit.map_or("no limit".to_owned(), |limit| {
+                print(format!("{word} {limit}"))
+            })
+        };
+        let fact = |name: &str, value: String, against: String, corner: &str| {
+            [name.to_owned(), print(value), against, print(corner)]
+        };
         let facts = vec![
-            [
-                "current error".to_owned(),
-                print(format::percent(output.error)),
-                format!(
-                    "{}; {}",
-                    against(
-                        output
-                            .error_limit
-                            .map(|l| format!("limit {}", format::percent(l)))
-                    ),
-                    print(&output.error_corner)
+            fact(
+                "current error",
+                format::percent(output.error),
+                limit("limit", output.error_limit.map(format::percent)),
+                &output.error_corner,
+            ),
+            fact(
+                "headroom",
+                format::volts(output.headroom),
+                print(format!("range from {}", format::volts(output.range[0]))),
+                &output.headroom_corner,
+            ),
+            fact(
+                "output resistance",
+                format::engineering(output.output_resistance, "Ohm"),
+                limit(
+                    "at least",
+                    output
+                        .output_resistance_limit
+                        .map(|limit| format::engineering(limit, "Ohm")),
                 ),
-            ],
-            [
-                "headroom".to_owned(),
-                print(format::volts(output.headroom)),
-                format!(
-                    "{}; {}",
-                    print(format!(
-                        "range starts at {}",
-                        format::volts(output.range[0])
-                    )),
-                    print(&output.headroom_corner)
-                ),
-            ],
-            [
-                "output resistance".to_owned(),
-                print(format::engineering(output.output_resistance, "Ohm")),
-                format!(
-                    "{}; {}",
-                    against(
-                        output
-                            .output_resistance_limit
-                            .map(|l| format!("at least {}", format::engineering(l, "Ohm")))
-                    ),
-                    print(&output.output_resistance_corner)
-                ),
-            ],
+                &output.output_resistance_corner,
+            ),
         ];
         Leg {
             name: output.name.clone(),
@@ -295,6 +300,7 @@ impl Leg {
             range: output.range,
             headroom: Some(coarse(output.headroom)).filter(|headroom| headroom.is_finite()),
             facts,
+            breaks: breaks.to_vec(),
             volts: coarse_all(&output.curve.volts),
             nominal: coarse_all(&output.curve.nominal),
             least: coarse_all(&output.curve.least),
@@ -730,7 +736,7 @@ fn page(outcome: &Outcome) -> Markup {
                     p.status.bad[!fits] { (words::status(outcome)) }
                     nav aria-label="Sections" {
                         @if first.is_some() {
-                            a href="#front" { "Front" }
+                            a href="#front" { @if outcome.front.is_empty() { "Nearest" } @else { "Front" } }
                             a href="#network" { "Network" }
                             a href="#outputs" { "Outputs" }
                             a href="#devices" { "Devices" }
@@ -775,7 +781,7 @@ fn front(outcome: &Outcome, data: &Data) -> Markup {
     let ranked = ranked_table(outcome);
     html! {
         section #front {
-            h2 { "The front" }
+            h2 { @if outcome.front.is_empty() { "The nearest network" } @else { "The front" } }
             div.pair {
                 figure.front-chart {
                     div #axes hidden {
@@ -789,10 +795,10 @@ fn front(outcome: &Outcome, data: &Data) -> Markup {
                             }
                         }
                     }
-                    div #chart { (chart::front(outcome, 560.0, 340.0)) }
+                    div #chart { (chart::front(outcome, 560.0, 340.0, Some(0))) }
                     div #hint role="status" hidden {}
                 }
-                div.scroll { table #ranked { (head_and_rows(&ranked)) } }
+                div.scroll.list tabindex="0" { table #ranked { (head_and_rows(&ranked)) } }
             }
         }
     }

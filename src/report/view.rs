@@ -31,7 +31,7 @@ impl Shown<'_> {
             "nearest network".to_owned()
         }
     }
-    /// The rank as text: its number, or "-" for the nearest network.
+    /// The rank as text: its number, or "nearest".
     pub fn rank(&self) -> String {
         if self.fits {
             self.network.rank.to_string()

@@ -600,6 +600,7 @@ pub fn nothing_fits() -> Outcome {
     let mut outcome = found();
     let mut nearest = outcome.front.swap_remove(0);
     nearest.outputs[0].error_limit = Some(0.004);
+    nearest.outputs[3].output_resistance_limit = Some(250e6);
     let broken = vec![
         Broken {
             figure: "current_error".to_owned(),

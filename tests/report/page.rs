@@ -95,7 +95,7 @@ fn hostile_text_stays_text() {
     assert!(!page.contains("<img") && !page.contains("</script><b>"));
     let legs = &data(&page)["networks"][0]["legs"];
     assert!(
-        legs[0]["facts"][0][2]
+        legs[0]["facts"][0][3]
             .as_str()
             .unwrap()
             .contains("</script><b>")
