@@ -84,9 +84,12 @@ fn deck(outcome: &Outcome, shown: &view::Shown<'_>) -> String {
     }
     for resistor in &source.netlist.resistors {
         // Parallel bodies are drawn one by one: the resistor card of the annex has no multiplier.
+        let bodies = match resistor.units {
+            1 => "one body".to_owned(),
+            units => format!("{units} equal bodies in parallel, each"),
+        };
         text.comment(&format!(
-            "{}, each drawn {} wide",
-            words::count(resistor.units as usize, "body").replace("bodys", "bodies"),
+            "{bodies} drawn {} wide",
             format::length(resistor.width)
         ));
         for body in 1..=resistor.units {

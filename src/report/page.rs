@@ -171,7 +171,7 @@ impl Network {
             let value = view::figure(network, &figure.name).map(|figure| figure.value);
             value.filter(|value| value.is_finite())
         });
-        let [current, ..] = [format::engineering(outcome.spec.reference.current().0, "A")];
+        let current = format::engineering(outcome.spec.reference.current().0, "A");
         Network {
             title: shown.title(),
             rank: shown.rank(),

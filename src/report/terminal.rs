@@ -2,7 +2,7 @@
 
 use super::devices::columns;
 use super::{format, view, words};
-use crate::explore::{Outcome, Status};
+use crate::explore::Outcome;
 
 /// Least width that a summary is laid out for; narrower terminals wrap.
 const NARROWEST: usize = 40;
@@ -27,22 +27,21 @@ pub fn summary(outcome: &Outcome, width: usize) -> String {
         text.push('\n');
         text.push_str(&table(&networks, width));
     }
-    if let Status::NothingFits { broken } = &outcome.status {
-        if !broken.is_empty() {
-            text.push('\n');
-            let limits = if broken.len() == 1 { "Limit" } else { "Limits" };
+    let broken = words::broken(outcome);
+    if !broken.is_empty() {
+        text.push('\n');
+        let limits = if broken.len() == 1 { "Limit" } else { "Limits" };
+        paragraph(
+            &mut text,
+            &format!("{limits} the nearest network breaks, worst first:"),
+            0,
+        );
+        for broken in broken {
             paragraph(
                 &mut text,
-                &format!("{limits} the nearest network breaks, worst first:"),
-                0,
+                &format!("- {}", words::broken_sentence(broken)),
+                2,
             );
-            for broken in broken {
-                paragraph(
-                    &mut text,
-                    &format!("- {}", words::broken_sentence(broken)),
-                    2,
-                );
-            }
         }
     }
     let failures: u64 = outcome

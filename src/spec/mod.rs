@@ -75,10 +75,7 @@ impl Reference {
     /// The rail whose families the reference feeds directly.
     pub fn rail(&self) -> Rail {
         match self {
-            Reference::Current {
-                flows: Flow::OutOfNetwork,
-                ..
-            } => Rail::Source,
+            Reference::Current { flows: Flow::OutOfNetwork, .. } => Rail::Source,
             _ => Rail::Sink,
         }
     }
