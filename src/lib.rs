@@ -10,6 +10,7 @@ pub mod network;
 pub mod numeric;
 pub mod process;
 pub mod search;
+pub mod report;
 pub mod spec;
 pub mod units;
 pub mod yaml;
