@@ -50,7 +50,12 @@ pub struct Search<'s, 'a> {
 impl<'s, 'a> Search<'s, 'a> {
     /// A search that charges `charge` m^2 for exceeding one limit by 100 %.
     pub fn new(ledger: &'s Ledger<'a>, menu: &'s Menu, charge: f64) -> Search<'s, 'a> {
-        Search { ledger, menu, charge, priced: 0 }
+        Search {
+            ledger,
+            menu,
+            charge,
+            priced: 0,
+        }
     }
 
     /// Scores a plan.
@@ -99,12 +104,19 @@ impl<'s, 'a> Search<'s, 'a> {
                     parent: Some(0),
                     bias: None,
                 });
-                if self.candidate(members[1].rail as usize, members[1].candidate).needs_bias() {
+                if self
+                    .candidate(members[1].rail as usize, members[1].candidate)
+                    .needs_bias()
+                {
                     members[1].bias = Some((self.menu.currents[0], Some(0)));
                 }
             }
-            let legs =
-                self.ledger.wants.iter().map(|w| usize::from(w.rail != root)).collect();
+            let legs = self
+                .ledger
+                .wants
+                .iter()
+                .map(|w| usize::from(w.rail != root))
+                .collect();
             let scored = self.score(Plan { members, legs });
             if best.as_ref().is_none_or(|b| scored.score < b.score) {
                 best = Some(scored);
@@ -155,7 +167,11 @@ impl<'s, 'a> Search<'s, 'a> {
         let (price, score) = self.value(plan);
         let better = score < best.score * (1.0 - 1e-9);
         if better {
-            *best = Scored { plan: plan.clone(), price, score };
+            *best = Scored {
+                plan: plan.clone(),
+                price,
+                score,
+            };
         }
         better
     }
@@ -264,8 +280,9 @@ impl<'s, 'a> Search<'s, 'a> {
         for k in 0..best.plan.legs.len() {
             let rail = self.ledger.wants[k].rail;
             let old = best.plan.clone();
-            let parents: Vec<usize> =
-                (0..old.members.len()).filter(|&p| old.members[p].rail != rail).collect();
+            let parents: Vec<usize> = (0..old.members.len())
+                .filter(|&p| old.members[p].rail != rail)
+                .collect();
             let mut plan = old.clone();
             let f = plan.members.len();
             plan.legs[k] = f;
@@ -307,7 +324,10 @@ impl<'s, 'a> Search<'s, 'a> {
 
     /// Drops families that serve nothing.
     fn prune(&mut self, best: &mut Scored) {
-        while let Some(idle) = (1..best.plan.members.len()).rev().find(|&f| !serves(&best.plan, f)) {
+        while let Some(idle) = (1..best.plan.members.len())
+            .rev()
+            .find(|&f| !serves(&best.plan, f))
+        {
             let plan = without(&best.plan, idle);
             *best = self.score(plan);
         }
@@ -422,9 +442,10 @@ impl<'s, 'a> Search<'s, 'a> {
 /// Whether anything hangs on a family.
 fn serves(plan: &Plan, f: usize) -> bool {
     plan.legs.contains(&f)
-        || plan.members.iter().any(|m| {
-            m.parent == Some(f) || matches!(m.bias, Some((_, Some(from))) if from == f)
-        })
+        || plan
+            .members
+            .iter()
+            .any(|m| m.parent == Some(f) || matches!(m.bias, Some((_, Some(from))) if from == f))
 }
 
 /// A plan without a family that nothing hangs on.
