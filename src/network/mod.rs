@@ -6,6 +6,7 @@ pub mod corners;
 pub mod detail;
 pub mod drawing;
 pub mod measure;
+pub mod probes;
 
 use crate::cells::{CELLS, Shape, Size, Tech, Unit};
 use crate::device;
