@@ -1,3 +1,4 @@
 //! The one integration binary: a plain list of modules.
 
 mod input;
+mod physics;
