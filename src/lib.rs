@@ -1,9 +1,14 @@
 //! biasloom: from a table of bias-current requirements to verified networks of MOS mirrors.
 
+pub mod cells;
 pub mod circuit;
 pub mod device;
+pub mod diag;
 pub mod explore;
+pub mod network;
 pub mod numeric;
 pub mod process;
+pub mod search;
 pub mod spec;
 pub mod units;
+pub mod yaml;

@@ -165,19 +165,33 @@ impl Circuit {
     /// Sensitivity of the current from known node `pin` to every device. Call
     /// [`Circuit::linearise`] first.
     pub fn sensitivity(&self, state: &State, pin: Node) -> Sensitivity {
-        let n = self.unknowns();
-        let mut c = vec![Lanes::ZERO; n];
+        let mut c = vec![Lanes::ZERO; self.unknowns()];
         self.slopes_of(state, pin, |node, g| {
             if let Some(r) = self.row(node) {
                 c[r] += g;
             }
         });
-        let mut y = vec![Lanes::ZERO; n];
+        self.adjoint(state, c, Some(pin))
+    }
+
+    /// Sensitivity of the voltage of unknown node `node` to every device, in V where
+    /// [`Circuit::sensitivity`] has A. Call [`Circuit::linearise`] first.
+    pub fn voltage_sensitivity(&self, state: &State, node: Node) -> Sensitivity {
+        let mut c = vec![Lanes::ZERO; self.unknowns()];
+        if let Some(r) = self.row(node) {
+            c[r] = Lanes::ONE;
+        }
+        self.adjoint(state, c, None)
+    }
+
+    /// d(g(v) + current from `pin`)/dp with dg/dv = c: dI/dp = dI/dp|direct - y . dF/dp, where
+    /// J^T y = c.
+    fn adjoint(&self, state: &State, mut c: Vec<Lanes>, pin: Option<Node>) -> Sensitivity {
+        let mut y = vec![Lanes::ZERO; self.unknowns()];
         self.plan().solve_transposed(&state.factors, &mut c, &mut y);
-        // dI = dI|direct - y . dF.
         let weight = |node: Node| match self.row(node) {
             Some(r) => -y[r],
-            None if node == pin => Lanes::ONE,
+            None if Some(node) == pin => Lanes::ONE,
             None => Lanes::ZERO,
         };
         let mut out = Sensitivity::default();

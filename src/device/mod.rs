@@ -4,12 +4,13 @@
 //! Every law is written for an n-channel device with voltages referred to its bulk; a p-channel
 //! device is the same law with voltages and currents mirrored, which the circuit does.
 
+pub mod bank;
 pub mod charge;
 pub mod constants;
 pub mod square;
 
 use crate::numeric::lanes::{Lanes, WIDTH};
-use crate::process::{Law, Mosfet};
+use crate::process::{Law, Mosfet, Resistor as ResistorCard};
 use charge::Charge;
 use square::Square;
 
@@ -114,19 +115,13 @@ impl Device {
 /// law n = 1, so that IC = (Vov / 2 UT)^2.
 pub fn width_for(mosfet: &Mosfet, nominal: f64, current: f64, inversion: f64, length: f64) -> f64 {
     let specific = specific_current(mosfet, nominal, length);
-    let loss = match &mosfet.law {
-        Law::Charge(law) => law.width_loss,
-        Law::Square(law) => law.width_loss,
-    };
+    let loss = width_loss(mosfet);
     current / (inversion * specific) * effective_length(mosfet, length) + loss
 }
 
 /// Inversion coefficient of a drawn size at `current`; the inverse of [`width_for`].
 pub fn inversion_of(mosfet: &Mosfet, nominal: f64, current: f64, width: f64, length: f64) -> f64 {
-    let loss = match &mosfet.law {
-        Law::Charge(law) => law.width_loss,
-        Law::Square(law) => law.width_loss,
-    };
+    let loss = width_loss(mosfet);
     current * effective_length(mosfet, length)
         / (specific_current(mosfet, nominal, length) * (width - loss))
 }
@@ -172,4 +167,97 @@ pub fn area_of(mosfet: &Mosfet, width: f64, length: f64, units: u32) -> f64 {
         m * (length + rule.border_length)
     };
     (width + rule.border_width) * along
+}
+
+/// Gate voltage to the bulk that gives `inversion` with the source at `source` volts, at the
+/// card's temperature: the long-channel closed form without corrections.
+///
+/// VP = VS + UT (2q + ln q), VG = VT0 + VP + gamma (sqrt(phi + VP) - sqrt(phi)) (the inverse of
+/// VP(VG), Enz & Vittoz 2006); square law: VG = VS + VT(VS) + 2 UT sqrt(IC).
+pub fn gate_voltage(
+    mosfet: &Mosfet,
+    nominal: f64,
+    inversion: f64,
+    source: f64,
+    length: f64,
+) -> f64 {
+    let ut = constants::thermal_voltage(nominal);
+    match &mosfet.law {
+        Law::Charge(law) => {
+            let q = inversion_charge(inversion);
+            let vp = source + ut * (2.0 * q + q.ln());
+            let (phi, gamma) = (law.phi.at(length), law.gamma.at(length));
+            let body = law.body_gamma.at(length) - gamma;
+            law.threshold.at(length)
+                + vp
+                + gamma * ((phi + vp).max(0.01).sqrt() - phi.sqrt())
+                + body * ((phi + source).max(0.01).sqrt() - phi.sqrt())
+        }
+        Law::Square(law) => {
+            let body = law.gamma * ((law.phi + source).max(0.01).sqrt() - law.phi.sqrt());
+            source + law.threshold + body + 2.0 * ut * inversion.sqrt()
+        }
+    }
+}
+
+/// Inversion coefficient of a diode-connected device with its source on the bulk and its gate at
+/// `gate` volts; the inverse of [`gate_voltage`] at source 0. Zero where it is off.
+pub fn inversion_at(mosfet: &Mosfet, nominal: f64, gate: f64, length: f64) -> f64 {
+    let ut = constants::thermal_voltage(nominal);
+    match &mosfet.law {
+        Law::Charge(law) => {
+            let (phi, gamma) = (law.phi.at(length), law.gamma.at(length));
+            let shifted = gate - law.threshold.at(length) + phi + gamma * phi.sqrt();
+            let root = (shifted + gamma * gamma / 4.0)
+                .max(gamma * gamma / 4.0)
+                .sqrt();
+            let surface = root - gamma / 2.0;
+            let q = charge::charge_of((surface * surface - phi) / ut);
+            q * q + q
+        }
+        Law::Square(law) => {
+            let vov = (gate - law.threshold).max(0.0);
+            (vov / (2.0 * ut)).powi(2)
+        }
+    }
+}
+
+/// Saturation voltage at an inversion coefficient and the card's temperature, V:
+/// UT (2 sqrt(IC + 1/4) + 3) (Binkley 2008); square law Vov = 2 UT sqrt(IC).
+pub fn saturation_voltage(mosfet: &Mosfet, nominal: f64, inversion: f64) -> f64 {
+    let ut = constants::thermal_voltage(nominal);
+    match &mosfet.law {
+        Law::Charge(_) => ut * (2.0 * (inversion + 0.25).sqrt() + 3.0),
+        Law::Square(_) => 2.0 * ut * inversion.sqrt(),
+    }
+}
+
+/// Normalised charge at the source of a saturated device: q^2 + q = IC.
+fn inversion_charge(inversion: f64) -> f64 {
+    // The positive root, in the form that keeps its digits for small IC.
+    2.0 * inversion / (1.0 + (1.0 + 4.0 * inversion).sqrt())
+}
+
+/// Drawn minus effective width, m.
+pub fn width_loss(mosfet: &Mosfet) -> f64 {
+    match &mosfet.law {
+        Law::Charge(law) => law.width_loss,
+        Law::Square(law) => law.width_loss,
+    }
+}
+
+/// Drawn length of a resistor body, m: squares times width.
+pub fn resistor_length(card: &ResistorCard, width: f64, ohms: f64) -> f64 {
+    width * ohms / card.sheet
+}
+
+/// Standard deviation of one body's relative error: a pair's A_R / sqrt(W L), divided by sqrt 2.
+pub fn resistor_mismatch(card: &ResistorCard, width: f64, ohms: f64) -> f64 {
+    card.mismatch / (2.0 * width * resistor_length(card, width, ohms)).sqrt()
+}
+
+/// Area of `units` bodies, m^2.
+pub fn resistor_area(card: &ResistorCard, width: f64, ohms: f64, units: u32) -> f64 {
+    let length = resistor_length(card, width, ohms);
+    f64::from(units) * (width + card.border_width) * (length + card.border_length)
 }

@@ -1,6 +1,21 @@
 //! Process cards: what the silicon does, with the source of every value.
 
+mod check;
 mod curve;
+mod file;
+mod load;
+mod quantities;
+
+pub use check::{Line, Loaded, read};
+pub use load::{SHIPPED, shipped_names};
+pub use quantities::ALL as QUANTITIES;
+
+/// JSON Schema of a card's file.
+pub fn schema() -> serde_json::Value {
+    schemars::SchemaGenerator::default()
+        .into_root_schema_for::<file::CardFile>()
+        .to_value()
+}
 
 use crate::units::{Kelvin, Metre, Range, Volt};
 

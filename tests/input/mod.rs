@@ -1,3 +1,4 @@
 //! Quantities, diagnostics, specs and process cards.
 
+mod cards;
 mod curve;

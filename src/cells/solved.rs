@@ -1,0 +1,366 @@
+//! A shape solved at every process corner and temperature, per unit of unit current.
+//!
+//! Widths grow in proportion to the unit current, so node voltages and relative errors do not
+//! depend on it: one solution prices a family of any size.
+
+use super::draw::{Draw, Feed, Lines};
+use super::{CELLS, Shape, Tech, Unit};
+use crate::circuit::dc::{Circuit, State};
+use crate::circuit::netlist::{Netlist, Node, VoltageSource};
+use crate::device::bank::Bank;
+use crate::device::{self, Conditions};
+use crate::numeric::lanes::{Lanes, WIDTH};
+use crate::spec::Rail;
+
+/// One condition at which shapes are solved: a process corner at a temperature.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Climate {
+    /// Index of the corner in the card.
+    pub corner: usize,
+    /// Temperature, K.
+    pub temperature: f64,
+}
+
+/// Conditions of a rail's transistor at a climate.
+pub fn conditions(tech: &Tech, climate: &Climate) -> Conditions {
+    let corner = &tech.card.corners[climate.corner];
+    let (threshold_shift, gain) = match tech.rail {
+        Rail::Sink => (corner.nmos_threshold, corner.nmos_gain),
+        Rail::Source => (corner.pmos_threshold, corner.pmos_gain),
+    };
+    Conditions {
+        temperature: climate.temperature,
+        threshold_shift,
+        gain,
+    }
+}
+
+/// Factor on a resistor's nominal value at a climate (1 where the card has no resistor).
+pub fn resistor_factor(tech: &Tech, climate: &Climate) -> f64 {
+    let Some(resistor) = &tech.card.resistor else {
+        return 1.0;
+    };
+    let dt = climate.temperature - tech.card.temperature.0;
+    tech.card.corners[climate.corner].resistor * (1.0 + dt * (resistor.tc1 + dt * resistor.tc2))
+}
+
+/// Conditions of a rail's transistor at climates, eight at a time; the last group repeats its last
+/// climate.
+pub fn groups_of(tech: &Tech, climates: &[Climate]) -> Vec<[Conditions; WIDTH]> {
+    climates
+        .chunks(WIDTH)
+        .map(|chunk| std::array::from_fn(|i| conditions(tech, &chunk[i.min(chunk.len() - 1)])))
+        .collect()
+}
+
+/// What a shape does, for every unit current.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Solved {
+    /// The shape.
+    pub shape: Shape,
+    /// Sizes at the reference unit current the solver was made with.
+    pub unit: Unit,
+    /// Least and largest voltage of the input leg over climates, V from the rail.
+    pub input: [f64; 2],
+    /// Least and largest voltage of the bias leg, V from the rail, where there is one.
+    pub bias: Option<[f64; 2]>,
+    /// Behaviour of an output leg at each probed voltage.
+    pub probes: Vec<Probe>,
+}
+
+/// An output leg at one voltage, over all climates.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Probe {
+    /// Least and largest systematic error of the copy, I_out / I_in - 1.
+    pub error: [f64; 2],
+    /// Least product of output resistance and current, V.
+    pub early: f64,
+    /// Largest mismatch variance of the input leg times its current, A.
+    pub variance_in: f64,
+    /// Largest mismatch variance of the output leg times its current, A.
+    pub variance_out: f64,
+}
+
+/// Why a shape was not solved.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
+pub enum Failure {
+    /// The cell cannot be sized to this shape.
+    NoSize,
+    /// Newton and both continuations failed at some climate.
+    NotConverged,
+}
+
+/// Solves shapes of one cell on one rail.
+pub struct Solver<'a> {
+    tech: Tech<'a>,
+    cell: usize,
+    current: f64,
+    probes: Vec<f64>,
+    climates: Vec<Climate>,
+    groups: Vec<Group>,
+    expected: Template,
+    bank: Bank<'a>,
+    /// DC solutions made so far, one per climate and circuit.
+    pub solutions: u64,
+}
+
+struct Group {
+    resistor: Lanes,
+    circuit: Circuit,
+    state: State,
+}
+
+/// The circuit every shape of a cell shares: an input leg of one unit, an output leg per probe.
+struct Template {
+    input: Node,
+    bias: Option<Node>,
+    pins: Vec<Node>,
+    /// Transistors of the input leg come first.
+    input_mos: usize,
+    input_resistors: usize,
+    /// Range of transistors and of resistors of each output leg.
+    legs: Vec<([usize; 2], [usize; 2])>,
+}
+
+fn draw_template(
+    cell: usize,
+    rail: Rail,
+    unit: &Unit,
+    current: f64,
+    probes: &[f64],
+) -> (Draw, Template) {
+    let mut draw = Draw::new();
+    draw.rail = rail;
+    draw.tag = "in".to_owned();
+    let input = draw.node("in", unit.expected.input);
+    draw.current(input, current);
+    let bias = unit.bias.map(|size| {
+        let node = draw.node("bias", unit.expected.cascode);
+        draw.current(node, current);
+        let size = super::Size {
+            width: size.width * current,
+            length: size.length,
+        };
+        (node, size)
+    });
+    let lines: Lines = CELLS[cell].input(&mut draw, unit, 1, &Feed { input, bias });
+    let input_mos = draw.netlist.mos.len();
+    let input_resistors = draw.netlist.resistors.len();
+    let mut pins = Vec::new();
+    let mut legs = Vec::new();
+    for (k, &volts) in probes.iter().enumerate() {
+        draw.tag = format!("out{k}");
+        let pin = draw.node(format!("pin{k}"), volts);
+        let (m, r) = (draw.netlist.mos.len(), draw.netlist.resistors.len());
+        CELLS[cell].output(&mut draw, unit, 1, &lines, pin);
+        legs.push((
+            [m, draw.netlist.mos.len()],
+            [r, draw.netlist.resistors.len()],
+        ));
+        pins.push(pin);
+    }
+    let bias = bias.map(|(node, _)| node);
+    (
+        draw,
+        Template {
+            input,
+            bias,
+            pins,
+            input_mos,
+            input_resistors,
+            legs,
+        },
+    )
+}
+
+impl<'a> Solver<'a> {
+    /// A solver whose output legs are probed at `probes` volts from the rail. `current` is the
+    /// unit current at which widths are written down, A.
+    pub fn new(
+        tech: Tech<'a>,
+        cell: usize,
+        current: f64,
+        probes: &[f64],
+        climates: &[Climate],
+    ) -> Solver<'a> {
+        Solver {
+            tech,
+            cell,
+            current,
+            probes: probes.to_vec(),
+            climates: climates.to_vec(),
+            groups: Vec::new(),
+            expected: Template {
+                input: 0,
+                bias: None,
+                pins: Vec::new(),
+                input_mos: 0,
+                input_resistors: 0,
+                legs: Vec::new(),
+            },
+            bank: Bank::new(tech.mosfet(), tech.nominal(), groups_of(&tech, climates)),
+            solutions: 0,
+        }
+    }
+
+    fn make_groups(&mut self, netlist: &Netlist) {
+        let mut netlist = netlist.clone();
+        // Both rails at 0 V: each side hangs on its own rail and the other one carries only the
+        // far ends of current sources.
+        netlist.voltages.push(VoltageSource {
+            name: "supply".into(),
+            plus: 1,
+            minus: 0,
+            volts: 0.0,
+        });
+        for (k, &pin) in self.expected.pins.iter().enumerate() {
+            let volts = match self.tech.rail {
+                Rail::Sink => self.probes[k],
+                Rail::Source => -self.probes[k],
+            };
+            netlist.voltages.push(VoltageSource {
+                name: format!("v{k}"),
+                plus: pin,
+                minus: 0,
+                volts,
+            });
+        }
+        for chunk in self.climates.chunks(WIDTH) {
+            let climate = |i: usize| &chunk[i.min(chunk.len() - 1)];
+            let resistor = Lanes::from_fn(|i| resistor_factor(&self.tech, climate(i)));
+            let g = self.groups.len();
+            let bank = &mut self.bank;
+            let circuit = Circuit::new(&netlist, |k| {
+                let m = &netlist.mos[k];
+                bank.device(g, m.width, m.length, m.units)
+            })
+            .expect("a template has grounded sources only");
+            self.groups.push(Group {
+                resistor,
+                circuit,
+                state: State::default(),
+            });
+        }
+    }
+
+    /// Solves a shape at every climate.
+    pub fn solve(&mut self, shape: &Shape) -> Result<Solved, Failure> {
+        let cell = CELLS[self.cell];
+        let unit = cell
+            .unit(&self.tech, shape, self.current)
+            .ok_or(Failure::NoSize)?;
+        let (draw, template) =
+            draw_template(self.cell, self.tech.rail, &unit, self.current, &self.probes);
+        self.expected = template;
+        if self.groups.is_empty() {
+            self.make_groups(&draw.netlist);
+        }
+        let mut solved = Solved {
+            shape: *shape,
+            unit,
+            input: [f64::INFINITY, f64::NEG_INFINITY],
+            bias: self
+                .expected
+                .bias
+                .map(|_| [f64::INFINITY, f64::NEG_INFINITY]),
+            probes: vec![
+                Probe {
+                    error: [f64::INFINITY, f64::NEG_INFINITY],
+                    early: f64::INFINITY,
+                    variance_in: 0.0,
+                    variance_out: 0.0,
+                };
+                self.probes.len()
+            ],
+        };
+        for g in 0..self.groups.len() {
+            self.solve_group(g, &draw, &mut solved)?;
+        }
+        Ok(solved)
+    }
+
+    fn solve_group(&mut self, g: usize, draw: &Draw, solved: &mut Solved) -> Result<(), Failure> {
+        for (k, m) in draw.netlist.mos.iter().enumerate() {
+            self.groups[g].circuit.mos[k].device = self.bank.device(g, m.width, m.length, m.units);
+        }
+        let sign = match self.tech.rail {
+            Rail::Sink => 1.0,
+            Rail::Source => -1.0,
+        };
+        let group = &mut self.groups[g];
+        for (lanes, r) in group
+            .circuit
+            .resistors
+            .iter_mut()
+            .zip(&draw.netlist.resistors)
+        {
+            lanes.conductance = f64::from(r.units) / (r.ohms * group.resistor);
+        }
+        group.state.volts.clear();
+        group
+            .state
+            .volts
+            .extend(draw.expected.iter().map(|&(_, v)| Lanes::splat(sign * v)));
+        self.solutions += WIDTH as u64;
+        if !group.circuit.solve(&mut group.state) {
+            return Err(Failure::NotConverged);
+        }
+        group.circuit.linearise(&mut group.state);
+        let (circuit, state) = (&group.circuit, &group.state);
+        let volts = |node: Node| state.volts[node] * sign;
+        widen(&mut solved.input, volts(self.expected.input));
+        if let (Some(node), Some(range)) = (self.expected.bias, solved.bias.as_mut()) {
+            widen(range, volts(node));
+        }
+        let target = self.current;
+        let tech = &self.tech;
+        for (k, probe) in solved.probes.iter_mut().enumerate() {
+            let pin = self.expected.pins[k];
+            let current = circuit.current_from(state, pin) * sign;
+            widen(&mut probe.error, current / target - 1.0);
+            let conductance = circuit.conductance_at(state, pin);
+            // A leg without output conductance has no finite Early voltage.
+            let early = current / conductance.max(Lanes::splat(1e-30));
+            probe.early = probe.early.min(early.smallest());
+            let sensitivity = circuit.sensitivity(state, pin);
+            let mos = |range: std::ops::Range<usize>| {
+                let mut sum = Lanes::ZERO;
+                for i in range {
+                    let m = &draw.netlist.mos[i];
+                    let (vt, beta) = device::mismatch_of(tech.mosfet(), m.width, m.length);
+                    let a = sensitivity.threshold[i] * vt;
+                    let b = sensitivity.gain[i] * beta;
+                    sum += a * a + b * b;
+                }
+                sum
+            };
+            let resistors = |range: std::ops::Range<usize>| {
+                let mut sum = Lanes::ZERO;
+                let Some(card) = &tech.card.resistor else {
+                    return sum;
+                };
+                for i in range {
+                    let r = &draw.netlist.resistors[i];
+                    let a =
+                        sensitivity.resistor[i] * device::resistor_mismatch(card, r.width, r.ohms);
+                    sum += a * a;
+                }
+                sum
+            };
+            let (mos_range, resistor_range) = self.expected.legs[k];
+            let scale = target / (current * current);
+            let input =
+                mos(0..self.expected.input_mos) + resistors(0..self.expected.input_resistors);
+            let output =
+                mos(mos_range[0]..mos_range[1]) + resistors(resistor_range[0]..resistor_range[1]);
+            probe.variance_in = probe.variance_in.max((input * scale).largest());
+            probe.variance_out = probe.variance_out.max((output * scale).largest());
+        }
+        Ok(())
+    }
+}
+
+fn widen(range: &mut [f64; 2], values: Lanes) {
+    range[0] = range[0].min(values.smallest());
+    range[1] = range[1].max(values.largest());
+}

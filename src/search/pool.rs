@@ -1,0 +1,208 @@
+//! The pool: shapes of every cell on both rails, swept on a grid, screened by closed forms, and
+//! the survivors solved at every climate.
+
+use crate::cells::solved::{Failure, Solved, Solver};
+use crate::cells::{CELLS, Cell, Shape, Tech};
+use crate::explore::Work;
+use crate::network::Job;
+use crate::network::corners::climates;
+use crate::spec::{Effort, Rail};
+use rayon::prelude::*;
+use std::collections::BTreeMap;
+
+/// Shapes handed to one task: fixed, so that the order of work never depends on the threads.
+const CHUNK: usize = 64;
+
+/// Voltages from the rail at which output legs are probed.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Probes {
+    /// Rising, without repetition.
+    pub volts: Vec<f64>,
+}
+
+impl Probes {
+    /// Probes of a rail: both ends (and the middle) of every output's range, and a ladder for
+    /// feeders up to the largest supply.
+    pub fn of(job: &Job, rail: Rail) -> Probes {
+        let mut volts: Vec<f64> = Vec::new();
+        for output in job.spec.outputs.iter().filter(|o| o.rail == rail) {
+            let (a, b) = (output.range.least.0, output.range.most.0);
+            volts.extend([a, b]);
+            if output.accuracy.is_none() {
+                volts.push((a + b) / 2.0);
+            }
+        }
+        let top = job.spec.supply.most.0;
+        volts.extend([0.15, 0.3, 0.5, 0.7, 0.9].map(|share| share * top));
+        volts.sort_by(f64::total_cmp);
+        volts.dedup();
+        Probes { volts }
+    }
+
+    /// Index of a voltage that was put in.
+    pub fn index(&self, volts: f64) -> usize {
+        self.volts.iter().position(|&v| v == volts).expect("every output's range is probed")
+    }
+}
+
+/// Solved shapes of both rails.
+#[derive(Debug, Clone)]
+pub struct Pool {
+    /// Probes per rail, indexed by `rail as usize`.
+    pub probes: [Probes; 2],
+    /// Solved shapes per rail.
+    pub shapes: [Vec<Solved>; 2],
+}
+
+/// The grid of one cell.
+fn grid(tech: &Tech, cell: usize, effort: Effort, headroom: f64) -> Vec<Shape> {
+    let (lengths, inversions, cascodes, drops) = match effort {
+        Effort::Quick => (10, 9, 2, 2),
+        Effort::Normal => (16, 13, 3, 3),
+        Effort::Thorough => (26, 21, 4, 4),
+    };
+    let mosfet = tech.mosfet();
+    let (shortest, longest) = (mosfet.length.least.0, mosfet.length.most.0);
+    let snap = |l: f64| {
+        let snapped = (l / mosfet.grid.0).round() * mosfet.grid.0;
+        snapped.clamp(shortest, longest)
+    };
+    let lengths: Vec<f64> = steps(shortest, longest, lengths).into_iter().map(snap).collect();
+    let inversions = steps(0.03, 60.0, inversions);
+    let parts = CELLS[cell].parts();
+    let cascode_sizes: Vec<(f64, f64)> = if parts.cascode {
+        let ratio = [1.0, 2.5, 6.0, 15.0];
+        ratio[..cascodes]
+            .iter()
+            .flat_map(|r| [0.3, 3.0].map(|ic| (snap(shortest * r), ic)))
+            .collect()
+    } else {
+        vec![(0.0, 0.0)]
+    };
+    let drops: Vec<f64> = match (parts.drop, parts.cascode) {
+        (false, _) => vec![0.0],
+        // Beyond the mirror device's saturation voltage.
+        (true, true) => [0.03, 0.08, 0.0, 0.15][..drops].to_vec(),
+        // Across the degeneration resistor.
+        (true, false) => steps(0.05, (headroom * 0.8).max(0.1), drops),
+    };
+    let mut shapes = Vec::new();
+    for &length in &lengths {
+        for &inversion in &inversions {
+            for &(cascode_length, cascode_inversion) in &cascode_sizes {
+                for &drop in &drops {
+                    shapes.push(Shape {
+                        cell,
+                        length,
+                        inversion,
+                        cascode_length,
+                        cascode_inversion,
+                        drop,
+                    });
+                }
+            }
+        }
+    }
+    shapes
+}
+
+/// `n` values from `least` to `most`, evenly spaced in the logarithm.
+fn steps(least: f64, most: f64, n: usize) -> Vec<f64> {
+    if n < 2 || most <= least {
+        return vec![least];
+    }
+    let ratio = (most / least).ln() / (n - 1) as f64;
+    (0..n).map(|i| least * (ratio * i as f64).exp()).collect()
+}
+
+/// Closed-form screening: false where no output of the rail and no feeder could use the shape.
+///
+/// The closed forms leave out what shortens a device's life in saturation, so a shape is only
+/// excluded where even half of its closed-form saturation voltage does not fit.
+pub fn could_serve(job: &Job, tech: &Tech, shape: &Shape) -> bool {
+    let cell = CELLS[shape.cell];
+    let supply = job.spec.supply.most.0;
+    // The input leg hangs between the rails; a fast, hot corner takes less than the closed form.
+    if 0.5 * cell.input_voltage(tech, shape) > supply {
+        return false;
+    }
+    // An output leg lives somewhere below the supply, or at an output's own low end.
+    let highest = job
+        .spec
+        .outputs
+        .iter()
+        .filter(|o| o.rail == tech.rail)
+        .map(|o| o.range.least.0)
+        .fold(supply, f64::max);
+    0.5 * cell.least_output(tech, shape) <= highest
+}
+
+/// Sweeps and solves.
+pub fn sweep(job: &Job, work: &mut Work, advance: &(dyn Fn(u64, u64) + Sync)) -> Pool {
+    let climates = climates(job);
+    let current = job.spec.reference.current().0;
+    let probes = [Rail::Sink, Rail::Source].map(|rail| Probes::of(job, rail));
+    let mut tasks: Vec<(usize, usize, Vec<Shape>)> = Vec::new();
+    for rail in [Rail::Sink, Rail::Source] {
+        let tech = job.tech(rail);
+        let headroom = job
+            .spec
+            .outputs
+            .iter()
+            .filter(|o| o.rail == rail)
+            .map(|o| o.range.least.0)
+            .fold(0.0, f64::max);
+        for (index, cell) in CELLS.iter().enumerate() {
+            if !usable(job, *cell) {
+                continue;
+            }
+            let shapes = grid(&tech, index, job.spec.search.effort, headroom);
+            work.shapes += shapes.len() as u64;
+            let kept: Vec<Shape> =
+                shapes.iter().copied().filter(|s| could_serve(job, &tech, s)).collect();
+            work.screened_out += (shapes.len() - kept.len()) as u64;
+            tasks.extend(kept.chunks(CHUNK).map(|c| (rail as usize, index, c.to_vec())));
+        }
+    }
+    let total = tasks.iter().map(|t| t.2.len() as u64).sum();
+    let done = std::sync::atomic::AtomicU64::new(0);
+    let results: Vec<(Vec<Result<Solved, Failure>>, u64)> = tasks
+        .par_iter()
+        .map(|(rail, cell, shapes)| {
+            let tech = job.tech([Rail::Sink, Rail::Source][*rail]);
+            let mut solver = Solver::new(tech, *cell, current, &probes[*rail].volts, &climates);
+            let out = shapes.iter().map(|s| solver.solve(s)).collect();
+            let so_far = done.fetch_add(shapes.len() as u64, std::sync::atomic::Ordering::Relaxed);
+            advance(so_far + shapes.len() as u64, total);
+            (out, solver.solutions)
+        })
+        .collect();
+    let mut shapes = [Vec::new(), Vec::new()];
+    let mut failures: BTreeMap<String, u64> = BTreeMap::new();
+    for ((rail, cell, _), (solved, solutions)) in tasks.iter().zip(results) {
+        work.dc_solutions += solutions;
+        for result in solved {
+            match result {
+                Ok(s) => {
+                    work.solved += 1;
+                    shapes[*rail].push(s);
+                }
+                Err(failure) => {
+                    let reason = match failure {
+                        Failure::NoSize => "no size",
+                        Failure::NotConverged => "no DC solution",
+                    };
+                    let key = format!("{} {reason}", CELLS[*cell].name());
+                    *failures.entry(key).or_default() += 1;
+                }
+            }
+        }
+    }
+    work.not_converged.extend(failures);
+    Pool { probes, shapes }
+}
+
+/// Whether the card allows a cell at all.
+fn usable(job: &Job, cell: &dyn Cell) -> bool {
+    job.card.resistor.is_some() || !cell.parts().resistor
+}
