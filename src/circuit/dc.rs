@@ -6,6 +6,11 @@
 //! 2 UT, some 1e-12 V) and Kirchhoff's current law at every node to 1e-9 of the currents
 //! that meet there. A lane that fails is retried by source stepping and then by gmin
 //! stepping (Ho, Ruehli, Brennan, IEEE Trans. CAS 22, 1975); what still fails is reported.
+//!
+//! The order of elimination belongs to the netlist: it is chosen as if every transistor were
+//! saturated, so that a solution does not depend on what was solved before it. Where a pivot of that
+//! order is zero after all (square-law devices that are off, or have no output conductance),
+//! an order of its own is made for that solution.
 
 use super::netlist::{GROUND, Netlist, Node, Polarity};
 use crate::device::{Device, Point};
@@ -25,6 +30,14 @@ const RESIDUAL_DONE: f64 = 1e-9;
 const CURRENT_FLOOR: f64 = 1e-20;
 /// Newton iterations before a lane counts as stuck.
 const ITERATIONS: u32 = 60;
+/// Orders of elimination tried in one run of Newton.
+const PLANS: u32 = 4;
+/// Slopes of the imagined saturated transistor by which the order of elimination is chosen, and of
+/// a resistor beside it. Only their order of magnitude matters.
+const TYPICAL_GM: f64 = 1.0;
+const TYPICAL_GMS: f64 = 1.3;
+const TYPICAL_GDS: f64 = 0.01;
+const TYPICAL_RESISTOR: f64 = 0.5;
 
 /// A transistor in eight lanes.
 #[derive(Debug, Clone)]
@@ -100,6 +113,8 @@ pub struct State {
     pub residual: [f64; 8],
     /// Newton iterations spent.
     pub iterations: u32,
+    /// The order of elimination of this solution, where the circuit's did not serve.
+    plan: Option<Plan>,
     pub(super) factors: Factors,
     pub(super) factored: bool,
     f: Vec<Lanes>,
@@ -185,7 +200,7 @@ impl Circuit {
                 amps: Lanes::splat(s.amps),
             })
             .collect();
-        Ok(Circuit {
+        let mut circuit = Circuit {
             mos,
             resistors,
             currents,
@@ -195,7 +210,29 @@ impl Circuit {
             pattern,
             diagonal,
             plan: None,
-        })
+        };
+        circuit.plan = circuit.typical_plan();
+        Ok(circuit)
+    }
+
+    /// The order of elimination for saturated transistors. `None` where even they would leave the
+    /// matrix singular, as a node that no channel or resistor reaches does.
+    fn typical_plan(&self) -> Option<Plan> {
+        let lane = Lanes::splat;
+        let mut values = vec![Lanes::ZERO; self.pattern.len()];
+        let saturated = Point {
+            gm: lane(TYPICAL_GM),
+            gms: lane(TYPICAL_GMS),
+            gds: lane(TYPICAL_GDS),
+            ..Point::OFF
+        };
+        for m in &self.mos {
+            m.stamp(&saturated, |e, g| values[e] += g);
+        }
+        for r in &self.resistors {
+            r.stamp(lane(TYPICAL_RESISTOR), |e, g| values[e] += g);
+        }
+        Plan::new(self.n, &self.pattern, &values)
     }
 
     /// Number of unknown nodes.
@@ -207,21 +244,22 @@ impl Circuit {
         (self.row[node] != NONE).then_some(self.row[node] as usize)
     }
 
-    pub(super) fn plan(&self) -> &Plan {
-        self.plan
-            .as_ref()
-            .expect("a plan is made by the first solution")
+    /// The order of elimination that `state` was factorised by.
+    pub(super) fn plan<'a>(&'a self, state: &'a State) -> &'a Plan {
+        let plan = state.plan.as_ref().or(self.plan.as_ref());
+        plan.expect("a converged solution has an order of elimination")
     }
 
     /// Solves from the voltages in `state.volts` (unknown nodes; the known ones are set here).
     /// Returns whether every lane converged; `state` says which.
-    pub fn solve(&mut self, state: &mut State) -> bool {
+    pub fn solve(&self, state: &mut State) -> bool {
         assert_eq!(
             state.volts.len(),
             self.fixed.len(),
             "one starting voltage per node"
         );
         let start = state.volts.clone();
+        state.plan = None;
         if self.newton(state, 1.0, 0.0) {
             return true;
         }
@@ -230,48 +268,59 @@ impl Circuit {
     }
 
     /// Newton at `share` of every source, with `gmin` from every unknown node to ground.
-    fn newton(&mut self, state: &mut State, share: f64, gmin: f64) -> bool {
+    fn newton(&self, state: &mut State, share: f64, gmin: f64) -> bool {
         for (node, value) in self.fixed.iter().enumerate() {
             if let Some(v) = value {
                 state.volts[node] = *v * share;
             }
         }
-        if self.plan.is_none() && !self.make_plan(state, share, gmin) {
-            state.converged = [false; 8];
+        state.iterations = 0;
+        state.converged = [false; 8];
+        let mut hopeless = Mask::NONE;
+        if state.plan.is_none() && self.plan.is_none() && !self.replan(state, share, gmin) {
             return false;
         }
-        let done = widest(Newton {
-            circuit: self,
-            state,
-            share,
-            gmin,
-        });
-        if !done && state.residual.iter().any(|r| !r.is_finite()) {
-            // A pivot order that fits one bias point can fail at another: forget it.
-            self.plan = None;
-        }
-        done
-    }
-
-    fn make_plan(&mut self, state: &mut State, share: f64, gmin: f64) -> bool {
-        // Unplanned slots equal entries: assemble into them and read one lane.
-        state.prepare(self.n, self.mos.len());
-        state.factors = Factors::zeroed(self.pattern.len());
-        assemble(self, state, share, gmin, |entry| entry);
-        for lane in 0..8 {
-            let values: Vec<f64> = (0..self.pattern.len())
-                .map(|e| state.factors.value(e).0[lane])
-                .collect();
-            if let Some(plan) = Plan::new(self.n, &self.pattern, &values) {
-                self.plan = Some(plan);
-                return true;
+        for round in 1.. {
+            let end = widest(Newton {
+                circuit: self,
+                state,
+                share,
+                gmin,
+                hopeless,
+            });
+            match end {
+                End::Converged => return true,
+                End::Spent => return false,
+                End::Singular => {
+                    if !self.replan(state, share, gmin) {
+                        return false;
+                    }
+                    hopeless = if round < PLANS {
+                        self.plan(state).serves().not()
+                    } else {
+                        Mask::NONE.not()
+                    };
+                }
             }
         }
         false
     }
 
+    /// Makes an order of elimination for the matrix at the present voltages.
+    fn replan(&self, state: &mut State, share: f64, gmin: f64) -> bool {
+        state.prepare(self.n, self.mos.len());
+        // Unplanned slots equal entries.
+        state.factors = Factors::zeroed(self.pattern.len());
+        assemble(self, state, share, gmin, |entry| entry);
+        let values: Vec<Lanes> = (0..self.pattern.len())
+            .map(|e| state.factors.value(e))
+            .collect();
+        state.plan = Plan::new(self.n, &self.pattern, &values);
+        state.plan.is_some()
+    }
+
     /// Source stepping, then gmin stepping, for the lanes Newton left.
-    fn rescue(&mut self, state: &mut State, start: &[Lanes]) {
+    fn rescue(&self, state: &mut State, start: &[Lanes]) {
         let mut best = state.clone();
         let mut iterations = state.iterations;
         let mut adopt = |state: &State, best: &mut State| {
@@ -319,7 +368,7 @@ impl Circuit {
         ];
         for ramp in ramps {
             state.volts.copy_from_slice(start);
-            self.plan = None;
+            state.plan = None;
             for &(share, gmin) in ramp {
                 // An intermediate point that fails leaves its best guess to the next one.
                 self.newton(state, share, gmin);
@@ -334,26 +383,64 @@ impl Circuit {
         }
         // Evaluate once more so that points and slopes belong to the adopted voltages.
         std::mem::swap(state, &mut best);
-        let (converged, residual) = (state.converged, state.residual);
-        self.newton_once(state);
-        state.converged = converged;
-        state.residual = residual;
+        self.evaluate(state);
     }
 
     /// Evaluates every element at the present voltages, without a step.
-    fn newton_once(&mut self, state: &mut State) {
+    pub(super) fn evaluate(&self, state: &mut State) {
         for (node, value) in self.fixed.iter().enumerate() {
             if let Some(v) = value {
                 state.volts[node] = *v;
             }
         }
-        if self.plan.is_none() && !self.make_plan(state, 1.0, 0.0) {
-            return;
+        if state.plan.is_some() || self.plan.is_some() || self.replan(state, 1.0, 0.0) {
+            widest(Evaluate {
+                circuit: self,
+                state,
+            });
         }
-        widest(Evaluate {
-            circuit: self,
-            state,
-        });
+    }
+
+    /// Makes the order of elimination anew at the present voltages and evaluates there.
+    pub(super) fn evaluate_anew(&self, state: &mut State) {
+        if self.replan(state, 1.0, 0.0) {
+            self.evaluate(state);
+        }
+    }
+}
+
+impl MosLanes {
+    /// Adds the slopes of the terminal currents to their places in the matrix.
+    #[inline(always)]
+    fn stamp(&self, p: &Point, mut add: impl FnMut(usize, Lanes)) {
+        // Columns in the order drain, gate, source, bulk.
+        let channel = [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm];
+        let [bg, bd, bs] = p.ib_slopes;
+        let impact = [bd, bg, bs, -(bd + bg + bs)];
+        for j in 0..4 {
+            if self.slots[j] != NONE {
+                add(self.slots[j] as usize, channel[j] + impact[j]);
+            }
+            if self.slots[4 + j] != NONE {
+                add(self.slots[4 + j] as usize, -channel[j]);
+            }
+            if self.slots[8 + j] != NONE {
+                add(self.slots[8 + j] as usize, -impact[j]);
+            }
+        }
+    }
+}
+
+impl ResistorLanes {
+    /// Adds `conductance` to its places in the matrix.
+    #[inline(always)]
+    fn stamp(&self, conductance: Lanes, mut add: impl FnMut(usize, Lanes)) {
+        let signs = [1.0, -1.0, -1.0, 1.0];
+        for (k, sign) in signs.into_iter().enumerate() {
+            if self.slots[k] != NONE {
+                add(self.slots[k] as usize, conductance * sign);
+            }
+        }
     }
 }
 
@@ -410,49 +497,25 @@ fn assemble(
         let id = p.id * m.sign;
         let ib = p.ib * m.sign;
         let [rd, rs, rb] = [circuit.row[d], circuit.row[s], circuit.row[b]];
-        // Columns in the order drain, gate, source, bulk.
-        let channel = [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm];
-        let [bg, bd, bs] = p.ib_slopes;
-        let impact = [bd, bg, bs, -(bd + bg + bs)];
         if rd != NONE {
             let r = rd as usize;
             f[r] += id + ib;
             scale[r] += (id + ib).abs();
-            for j in 0..4 {
-                if m.slots[j] != NONE {
-                    factors.add(slot(m.slots[j] as usize), channel[j] + impact[j]);
-                }
-            }
         }
         if rs != NONE {
             let r = rs as usize;
             f[r] -= id;
             scale[r] += id.abs();
-            for j in 0..4 {
-                if m.slots[4 + j] != NONE {
-                    factors.add(slot(m.slots[4 + j] as usize), -channel[j]);
-                }
-            }
         }
         if rb != NONE {
-            let r = rb as usize;
-            f[r] -= ib;
-            for j in 0..4 {
-                if m.slots[8 + j] != NONE {
-                    factors.add(slot(m.slots[8 + j] as usize), -impact[j]);
-                }
-            }
+            f[rb as usize] -= ib;
         }
+        m.stamp(&p, |entry, g| factors.add(slot(entry), g));
     }
     for r in &circuit.resistors {
         let [a, b] = r.nodes;
         let i = (volts[a] - volts[b]) * r.conductance;
-        let signs = [1.0, -1.0, -1.0, 1.0];
-        for (k, sign) in signs.into_iter().enumerate() {
-            if r.slots[k] != NONE {
-                factors.add(slot(r.slots[k] as usize), r.conductance * sign);
-            }
-        }
+        r.stamp(r.conductance, |entry, g| factors.add(slot(entry), g));
         for (node, sign) in [(a, 1.0), (b, -1.0)] {
             let row = circuit.row[node];
             if row != NONE {
@@ -484,28 +547,43 @@ fn assemble(
     }
 }
 
+/// How a run of Newton ended.
+enum End {
+    /// Every lane converged.
+    Converged,
+    /// The iterations are used up.
+    Spent,
+    /// In some lane that still has hope the order of elimination met a zero pivot.
+    Singular,
+}
+
 struct Newton<'a> {
     circuit: &'a Circuit,
     state: &'a mut State,
     share: f64,
     gmin: f64,
+    /// Lanes whose matrix no order of elimination serves; they stand still.
+    hopeless: Mask,
 }
 
 impl Work for Newton<'_> {
-    type Answer = bool;
+    type Answer = End;
 
     #[inline(always)]
-    fn run(self) -> bool {
+    fn run(self) -> End {
         let Newton {
             circuit,
             state,
             share,
             gmin,
+            hopeless,
         } = self;
-        let plan = circuit.plan();
-        let mut step = Lanes::splat(f64::INFINITY);
-        state.iterations = 0;
-        loop {
+        let own = state.plan.take();
+        let plan = own.as_ref().or(circuit.plan.as_ref());
+        let plan = plan.expect("the caller saw to an order of elimination");
+        let never = Lanes::splat(f64::INFINITY);
+        let mut step = never;
+        let end = loop {
             state.iterations += 1;
             state.prepare(circuit.n, circuit.mos.len());
             plan.clear(&mut state.factors);
@@ -520,12 +598,15 @@ impl Work for Newton<'_> {
             state.converged = done.0;
             state.residual = residual.0;
             if done.all() {
-                return true;
+                break End::Converged;
             }
             if state.iterations >= ITERATIONS {
-                return false;
+                break End::Spent;
             }
-            plan.factor(&mut state.factors);
+            let sound = plan.factor(&mut state.factors);
+            if !sound.or(done).or(hopeless).all() {
+                break End::Singular;
+            }
             plan.solve(&state.factors, &mut state.f, &mut state.dx);
             step = Lanes::ZERO;
             let most = Lanes::splat(STEP_MOST);
@@ -533,10 +614,13 @@ impl Work for Newton<'_> {
                 if row != NONE {
                     let d = state.dx[row as usize].min(most).max(-most);
                     step = step.max(d.abs());
-                    state.volts[node] -= d;
+                    state.volts[node] -= Lanes::select(sound, d, Lanes::ZERO);
                 }
             }
-        }
+            step = Lanes::select(sound, step, never);
+        };
+        state.plan = own;
+        end
     }
 }
 
@@ -551,9 +635,12 @@ impl Work for Evaluate<'_> {
     #[inline(always)]
     fn run(self) {
         let Evaluate { circuit, state } = self;
-        let plan = circuit.plan();
+        let own = state.plan.take();
+        let plan = own.as_ref().or(circuit.plan.as_ref());
+        let plan = plan.expect("the caller saw to an order of elimination");
         state.prepare(circuit.n, circuit.mos.len());
         plan.clear(&mut state.factors);
         assemble(circuit, state, 1.0, 0.0, |e| plan.slot(e));
+        state.plan = own;
     }
 }

@@ -132,8 +132,7 @@ fn sparse_solution_agrees_with_dense_elimination() {
     let mut compared = 0;
     for _ in 0..2000 {
         let (n, pattern, values) = random_matrix(&mut rng);
-        let first: Vec<f64> = values.iter().map(|v| v.0[0]).collect();
-        let Some(plan) = Plan::new(n, &pattern, &first) else {
+        let Some(plan) = Plan::new(n, &pattern, &values) else {
             continue;
         };
         assert_eq!(plan.size(), n);
@@ -142,7 +141,7 @@ fn sparse_solution_agrees_with_dense_elimination() {
         for (e, v) in values.iter().enumerate() {
             factors.add(plan.slot(e), *v);
         }
-        plan.factor(&mut factors);
+        assert_eq!(plan.factor(&mut factors), plan.serves());
         let b: Vec<Lanes> = (0..n)
             .map(|_| Lanes::from_fn(|_| rng.random_range(-1.0..1.0)))
             .collect();
@@ -176,14 +175,56 @@ fn sparse_solution_agrees_with_dense_elimination() {
     assert!(compared > 20_000, "only {compared} systems were compared");
 }
 
+/// The same number in every lane.
+fn splat(values: &[f64]) -> Vec<Lanes> {
+    values.iter().map(|&v| Lanes::splat(v)).collect()
+}
+
 #[test]
 fn singular_matrices_get_no_plan() {
-    assert!(Plan::new(2, &[(0, 0), (1, 1)], &[1.0, 0.0]).is_none());
-    // Two equal rows: found only after the first elimination.
     let full = [(0, 0), (0, 1), (1, 0), (1, 1)];
-    assert!(Plan::new(2, &full, &[1.0, 2.0, 1.0, 2.0]).is_none());
-    assert!(Plan::new(2, &full, &[1.0, 2.0, 1.0, f64::NAN]).is_none());
+    let plan = |values: &[f64]| Plan::new(2, &full, &splat(values));
+    assert!(plan(&[1.0, 2.0, 1.0, 3.0]).is_some());
+    // Two equal rows: found only after the first elimination.
+    assert!(plan(&[1.0, 2.0, 1.0, 2.0]).is_none());
+    assert!(plan(&[1.0, 2.0, 1.0, f64::NAN]).is_none());
+    assert!(Plan::new(2, &[(0, 0), (1, 1)], &splat(&[1.0, 0.0])).is_none());
     assert!(Plan::new(0, &[], &[]).is_some());
+}
+
+/// One order must do for lanes whose zeros stand in different places, and a singular lane must not
+/// spoil the others.
+#[test]
+fn one_order_serves_every_regular_lane() {
+    let full = [(0, 0), (0, 1), (1, 0), (1, 1)];
+    let mut values = splat(&[0.0, 1.0, 1.0, 1.0]);
+    // Lane 1 has its zero on the other diagonal place, lane 2 is singular, lane 3 not finite.
+    for (lane, column) in [
+        (1, [1.0, 1.0, 1.0, 0.0]),
+        (2, [0.0, 0.0, 1.0, 1.0]),
+        (3, [f64::INFINITY, 1.0, 1.0, 1.0]),
+    ] {
+        for (value, new) in values.iter_mut().zip(column) {
+            value.0[lane] = new;
+        }
+    }
+    let plan = Plan::new(2, &full, &values).expect("six lanes are regular");
+    let expected: [bool; WIDTH] = std::array::from_fn(|i| i != 2 && i != 3);
+    assert_eq!(plan.serves().0, expected);
+    let mut factors = Factors::default();
+    plan.clear(&mut factors);
+    for (e, v) in values.iter().enumerate() {
+        factors.add(plan.slot(e), *v);
+    }
+    let sound = plan.factor(&mut factors);
+    let mut x = [Lanes::ZERO; 2];
+    plan.solve(&factors, &mut splat(&[2.0, 3.0]), &mut x);
+    for lane in (0..WIDTH).filter(|&i| expected[i]) {
+        assert!(sound.0[lane]);
+        let [a, b] = [x[0].0[lane], x[1].0[lane]];
+        let truth = if lane == 1 { [3.0, -1.0] } else { [1.0, 2.0] };
+        assert_eq!([a, b], truth);
+    }
 }
 
 /// Everything the inner loops do, on given numbers.
@@ -251,8 +292,7 @@ fn every_instruction_set_gives_the_same_bytes() {
             .collect();
         let (plan, matrix) = loop {
             let (n, pattern, matrix) = random_matrix(&mut rng);
-            let first: Vec<f64> = matrix.iter().map(|v| v.0[0]).collect();
-            if let Some(plan) = Plan::new(n, &pattern, &first) {
+            if let Some(plan) = Plan::new(n, &pattern, &matrix) {
                 break (plan, matrix);
             }
         };
