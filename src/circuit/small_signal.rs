@@ -196,7 +196,8 @@ impl Circuit {
     /// J^T y = c.
     fn adjoint(&self, state: &State, mut c: Vec<Lanes>, pin: Option<Node>) -> Sensitivity {
         let mut y = vec![Lanes::ZERO; self.unknowns()];
-        self.plan(state).solve_transposed(&state.factors, &mut c, &mut y);
+        self.plan(state)
+            .solve_transposed(&state.factors, &mut c, &mut y);
         let weight = |node: Node| match self.row(node) {
             Some(r) => -y[r],
             None if Some(node) == pin => Lanes::ONE,

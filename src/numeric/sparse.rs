@@ -295,6 +295,7 @@ impl Factors {
     }
 
     /// The value in a slot.
+    #[inline(always)]
     pub fn value(&self, slot: usize) -> Lanes {
         self.slots[slot]
     }

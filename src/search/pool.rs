@@ -41,7 +41,10 @@ impl Probes {
 
     /// Index of a voltage that was put in.
     pub fn index(&self, volts: f64) -> usize {
-        self.volts.iter().position(|&v| v == volts).expect("every output's range is probed")
+        self.volts
+            .iter()
+            .position(|&v| v == volts)
+            .expect("every output's range is probed")
     }
 }
 
@@ -67,7 +70,10 @@ fn grid(tech: &Tech, cell: usize, effort: Effort, headroom: f64) -> Vec<Shape> {
         let snapped = (l / mosfet.grid.0).round() * mosfet.grid.0;
         snapped.clamp(shortest, longest)
     };
-    let lengths: Vec<f64> = steps(shortest, longest, lengths).into_iter().map(snap).collect();
+    let lengths: Vec<f64> = steps(shortest, longest, lengths)
+        .into_iter()
+        .map(snap)
+        .collect();
     let inversions = steps(0.03, 60.0, inversions);
     let parts = CELLS[cell].parts();
     let cascode_sizes: Vec<(f64, f64)> = if parts.cascode {
@@ -158,10 +164,16 @@ pub fn sweep(job: &Job, work: &mut Work, advance: &(dyn Fn(u64, u64) + Sync)) ->
             }
             let shapes = grid(&tech, index, job.spec.search.effort, headroom);
             work.shapes += shapes.len() as u64;
-            let kept: Vec<Shape> =
-                shapes.iter().copied().filter(|s| could_serve(job, &tech, s)).collect();
+            let kept: Vec<Shape> = shapes
+                .iter()
+                .copied()
+                .filter(|s| could_serve(job, &tech, s))
+                .collect();
             work.screened_out += (shapes.len() - kept.len()) as u64;
-            tasks.extend(kept.chunks(CHUNK).map(|c| (rail as usize, index, c.to_vec())));
+            tasks.extend(
+                kept.chunks(CHUNK)
+                    .map(|c| (rail as usize, index, c.to_vec())),
+            );
         }
     }
     let total = tasks.iter().map(|t| t.2.len() as u64).sum();

@@ -76,12 +76,20 @@ fn charge_equation_table() {
     ] {
         let ours = charge_of(v);
         // Four decimals of v move q by q/(1 + 2q) times half a unit of the fourth.
-        assert!((ours - q).abs() < 0.6e-4 * q / (1.0 + 2.0 * q) + 0.6e-6, "{v}");
+        assert!(
+            (ours - q).abs() < 0.6e-4 * q / (1.0 + 2.0 * q) + 0.6e-6,
+            "{v}"
+        );
         let exact = ((1.0 + 4.0 * ic as f64).sqrt() - 1.0) / 2.0;
         close(q, exact, 1e-4);
         close(charge_of(2.0 * exact + exact.ln()), exact, 1e-14);
     }
-    for (v, q) in [(-5.0, 0.0066489), (0.0, 0.4263028), (5.0, 2.1234734), (20.0, 8.9066035)] {
+    for (v, q) in [
+        (-5.0, 0.0066489),
+        (0.0, 0.4263028),
+        (5.0, 2.1234734),
+        (20.0, 8.9066035),
+    ] {
         assert!((charge_of(v) - q).abs() < 0.6e-7, "{v}");
     }
 }
@@ -119,7 +127,13 @@ fn pinch_off(device: &Device, vg: f64, ut: f64) -> f64 {
 /// Derived from the example set at VS = 0, 298.15 K, long channel, W/L = 1.
 #[test]
 fn example_set_gives_its_pinch_off_slope_factor_and_current() {
-    let device = device(Law::Charge(example_set()), EXAMPLE_T, 1e-5, 1e-5, &at_temperature(EXAMPLE_T));
+    let device = device(
+        Law::Charge(example_set()),
+        EXAMPLE_T,
+        1e-5,
+        1e-5,
+        &at_temperature(EXAMPLE_T),
+    );
     let ut = thermal_voltage(EXAMPLE_T);
     for (vg, vp, n, microamp) in [
         (0.4, -0.14545, 1.36865, 0.00094),
@@ -130,7 +144,10 @@ fn example_set_gives_its_pinch_off_slope_factor_and_current() {
         (2.0, 1.08217, 1.24183, 99.025),
     ] {
         let p = at(&device, vg, 3.0, 0.0);
-        assert!((p.id.0[0] * 1e6 - microamp).abs() < 1e-5 * microamp + 0.6e-5, "VG {vg}");
+        assert!(
+            (p.id.0[0] * 1e6 - microamp).abs() < 1e-5 * microamp + 0.6e-5,
+            "VG {vg}"
+        );
         let ours = pinch_off(&device, vg, ut);
         assert!((ours - vp).abs() < 0.6e-5, "VG {vg}: VP {ours}");
         // n from the current there: ID = 2 n KP UT^2 (q^2 + q).
@@ -143,7 +160,13 @@ fn example_set_gives_its_pinch_off_slope_factor_and_current() {
 #[test]
 fn example_set_at_125_degrees() {
     let hot = 398.15;
-    let device = device(Law::Charge(example_set()), EXAMPLE_T, 1e-5, 1e-5, &at_temperature(hot));
+    let device = device(
+        Law::Charge(example_set()),
+        EXAMPLE_T,
+        1e-5,
+        1e-5,
+        &at_temperature(hot),
+    );
     let ut = thermal_voltage(hot);
     // VP is zero where VG is the threshold.
     assert!(pinch_off(&device, 0.450, ut).abs() < 1e-6);
@@ -278,7 +301,13 @@ fn single_device_of_a_textbook_card() {
             kp_exponent: 0.0,
             early_per_length: 1.0 / (lambda * 0.5e-6),
         };
-        let device = device(Law::Square(law), 300.0, 50e-6, 0.5e-6, &at_temperature(300.0));
+        let device = device(
+            Law::Square(law),
+            300.0,
+            50e-6,
+            0.5e-6,
+            &at_temperature(300.0),
+        );
         // The book leaves channel-length modulation out of the bias point: VDS at its smallest.
         let vov = (2.0 * 0.5e-3 / (kp * 100.0) as f64).sqrt();
         let p = at(&device, vt + vov, vov + 1e-9, 0.0);
@@ -295,12 +324,24 @@ fn sizing_by_inversion_coefficient_is_its_own_inverse_and_hits_the_device() {
         let card = mosfet(Law::Charge(ChargeLaw {
             width_loss: 0.03e-6,
             length_loss: 0.04e-6,
-            ..plain_charge(0.5, rng.random_range(0.2..0.9), rng.random_range(0.6..1.0), 2e-4)
+            ..plain_charge(
+                0.5,
+                rng.random_range(0.2..0.9),
+                rng.random_range(0.6..1.0),
+                2e-4,
+            )
         }));
-        let (length, ic) = (rng.random_range(0.2e-6..10e-6), 10f64.powf(rng.random_range(-2.0..2.0)));
+        let (length, ic) = (
+            rng.random_range(0.2e-6..10e-6),
+            10f64.powf(rng.random_range(-2.0..2.0)),
+        );
         let current = 10f64.powf(rng.random_range(-8.0..-4.0));
         let width = width_for(&card, 300.0, current, ic, length);
-        close(inversion_of(&card, 300.0, current, width, length), ic, 1e-12);
+        close(
+            inversion_of(&card, 300.0, current, width, length),
+            ic,
+            1e-12,
+        );
         // The device so sized, at VP = 0, carries that current where its charge says IC.
         let d = Device::new(&card, 300.0, width, length, &at_temperature(300.0));
         let q = ((1.0 + 4.0 * ic).sqrt() - 1.0) / 2.0;
@@ -367,7 +408,8 @@ fn every_slope_agrees_with_a_finite_difference() {
                 };
                 // Rounding of the current over the step, and the fourth-order term h^4/UT^5; an
                 // impact current far below any other is steeper than the step resolves.
-                let size = pick(&here, ib, lane).abs() / 0.02 + ours.iter().map(|s| s.abs()).sum::<f64>();
+                let size =
+                    pick(&here, ib, lane).abs() / 0.02 + ours.iter().map(|s| s.abs()).sum::<f64>();
                 for which in 0..3 {
                     let truth = by(which);
                     assert!(
@@ -393,7 +435,13 @@ fn every_slope_agrees_with_a_finite_difference() {
 fn current_is_continuous_and_rises_with_drain_and_gate() {
     let mut rng = Pcg64::seed_from_u64(6);
     for _ in 0..12_500 {
-        let device = device(random_law(&mut rng), 300.0, 5e-6, 0.5e-6, &random_conditions(&mut rng));
+        let device = device(
+            random_law(&mut rng),
+            300.0,
+            5e-6,
+            0.5e-6,
+            &random_conditions(&mut rng),
+        );
         let (vg, vd, vs) = random_bias(&mut rng);
         let here = at(&device, vg, vd, vs);
         let h = 1e-7;
@@ -406,12 +454,27 @@ fn current_is_continuous_and_rises_with_drain_and_gate() {
             // A jump would show as a difference far above slope times step.
             for p in [&drain, &gate, &source] {
                 let jump = (p.id.0[lane] - id).abs();
-                assert!(jump <= 1.5 * size * h + 1e-14 * id.abs() + 1e-24, "{vg} {vd} {vs}: {jump}");
+                assert!(
+                    jump <= 1.5 * size * h + 1e-14 * id.abs() + 1e-24,
+                    "{vg} {vd} {vs}: {jump}"
+                );
             }
-            assert!(here.gds.0[lane] >= 0.0, "gds {} at {vg} {vd} {vs}", here.gds.0[lane]);
-            assert!(here.gms.0[lane] >= 0.0, "gms {} at {vg} {vd} {vs}", here.gms.0[lane]);
+            assert!(
+                here.gds.0[lane] >= 0.0,
+                "gds {} at {vg} {vd} {vs}",
+                here.gds.0[lane]
+            );
+            assert!(
+                here.gms.0[lane] >= 0.0,
+                "gms {} at {vg} {vd} {vs}",
+                here.gms.0[lane]
+            );
             let forward = if vd < vs { -1.0 } else { 1.0 };
-            assert!(here.gm.0[lane] * forward >= 0.0, "gm {} at {vg} {vd} {vs}", here.gm.0[lane]);
+            assert!(
+                here.gm.0[lane] * forward >= 0.0,
+                "gm {} at {vg} {vd} {vs}",
+                here.gm.0[lane]
+            );
             assert!(id * forward >= 0.0, "id {id} at {vg} {vd} {vs}");
             assert!(here.ib.0[lane] >= 0.0);
         }
@@ -423,7 +486,13 @@ fn current_is_continuous_and_rises_with_drain_and_gate() {
 fn current_never_falls_along_a_sweep() {
     let mut rng = Pcg64::seed_from_u64(7);
     for _ in 0..400 {
-        let device = device(random_law(&mut rng), 300.0, 5e-6, 0.5e-6, &random_conditions(&mut rng));
+        let device = device(
+            random_law(&mut rng),
+            300.0,
+            5e-6,
+            0.5e-6,
+            &random_conditions(&mut rng),
+        );
         let (vg, _, vs) = random_bias(&mut rng);
         let (mut by_drain, mut by_gate) = ([f64::NEG_INFINITY; WIDTH], [f64::NEG_INFINITY; WIDTH]);
         for step in 0..200 {
@@ -432,7 +501,10 @@ fn current_never_falls_along_a_sweep() {
             let gate = at(&device, v, vs + 1.0, vs);
             for lane in 0..WIDTH {
                 let slack = 1e-13 * drain.id.0[lane].abs() + 1e-24;
-                assert!(drain.id.0[lane] >= by_drain[lane] - slack, "VG {vg} VS {vs} VDS {v}");
+                assert!(
+                    drain.id.0[lane] >= by_drain[lane] - slack,
+                    "VG {vg} VS {vs} VDS {v}"
+                );
                 assert!(gate.id.0[lane] >= by_gate[lane] - 1e-13 * gate.id.0[lane] - 1e-24);
                 by_drain[lane] = drain.id.0[lane];
                 by_gate[lane] = gate.id.0[lane];
@@ -445,14 +517,24 @@ fn current_never_falls_along_a_sweep() {
 fn no_current_without_drain_source_voltage() {
     let mut rng = Pcg64::seed_from_u64(8);
     for _ in 0..2000 {
-        let device = device(random_law(&mut rng), 300.0, 5e-6, 0.5e-6, &random_conditions(&mut rng));
+        let device = device(
+            random_law(&mut rng),
+            300.0,
+            5e-6,
+            0.5e-6,
+            &random_conditions(&mut rng),
+        );
         let (vg, _, v) = random_bias(&mut rng);
         let p = at(&device, vg, v, v);
         for lane in 0..WIDTH {
             let (gds, gms) = (p.gds.0[lane], p.gms.0[lane]);
             // Zero to the rounding of the charges, which UT makes a rounding of the voltage.
             let rounding = 4.0 * f64::EPSILON * gds;
-            assert!(p.id.0[lane].abs() <= rounding, "{} {rounding}", p.id.0[lane]);
+            assert!(
+                p.id.0[lane].abs() <= rounding,
+                "{} {rounding}",
+                p.id.0[lane]
+            );
             assert!(p.ib.0[lane] <= rounding);
             assert!(p.gm.0[lane].abs() <= rounding / 0.02);
             assert!((gds - gms).abs() <= 1e-12 * gds, "{gds} {gms}");
@@ -465,7 +547,13 @@ fn no_current_without_drain_source_voltage() {
 fn drain_and_source_exchange_roles() {
     let mut rng = Pcg64::seed_from_u64(9);
     for _ in 0..2000 {
-        let device = device(random_law(&mut rng), 300.0, 5e-6, 0.5e-6, &random_conditions(&mut rng));
+        let device = device(
+            random_law(&mut rng),
+            300.0,
+            5e-6,
+            0.5e-6,
+            &random_conditions(&mut rng),
+        );
         let (vg, vd, vs) = random_bias(&mut rng);
         let (p, r) = (at(&device, vg, vd, vs), at(&device, vg, vs, vd));
         assert_eq!(p.id, -r.id);
@@ -483,7 +571,8 @@ fn lanes_are_independent() {
         let law = random_law(&mut rng);
         let lanes = random_conditions(&mut rng);
         let together = device(law.clone(), 300.0, 5e-6, 0.5e-6, &lanes);
-        let v: [Lanes; 3] = std::array::from_fn(|_| Lanes::from_fn(|_| rng.random_range(-0.2..2.5)));
+        let v: [Lanes; 3] =
+            std::array::from_fn(|_| Lanes::from_fn(|_| rng.random_range(-0.2..2.5)));
         let all = together.at(v[0], v[1], v[2]);
         for lane in 0..WIDTH {
             let alone = device(law.clone(), 300.0, 5e-6, 0.5e-6, &[lanes[lane]; WIDTH]);
@@ -499,9 +588,18 @@ fn lanes_are_independent() {
 fn width_scales_the_current() {
     let mut rng = Pcg64::seed_from_u64(11);
     for _ in 0..200 {
-        let device = device(random_law(&mut rng), 300.0, 5e-6, 0.5e-6, &random_conditions(&mut rng));
+        let device = device(
+            random_law(&mut rng),
+            300.0,
+            5e-6,
+            0.5e-6,
+            &random_conditions(&mut rng),
+        );
         let (vg, vd, vs) = random_bias(&mut rng);
-        let (one, four) = (at(&device, vg, vd, vs), at(&device.widened(4.0), vg, vd, vs));
+        let (one, four) = (
+            at(&device, vg, vd, vs),
+            at(&device.widened(4.0), vg, vd, vs),
+        );
         assert_eq!(one.id * 4.0, four.id);
         assert_eq!(one.gm * 4.0, four.gm);
         for lane in 0..WIDTH {

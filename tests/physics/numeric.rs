@@ -61,7 +61,11 @@ fn exponential_and_logarithm_agree_with_the_platform_a_million_times() {
             assert!((e - truth).abs() <= bound, "exp({}) = {e} {truth}", x.0[i]);
             let (e, truth) = (l.0[i], back.0[i].ln());
             let bound = (PROMISED_ULP + PLATFORM_ULP) * ulp(truth);
-            assert!((e - truth).abs() <= bound, "ln({}) = {e} {truth}", back.0[i]);
+            assert!(
+                (e - truth).abs() <= bound,
+                "ln({}) = {e} {truth}",
+                back.0[i]
+            );
         }
     }
 }
@@ -69,7 +73,17 @@ fn exponential_and_logarithm_agree_with_the_platform_a_million_times() {
 /// The argument's range is part of the promise: outside it the ends hold.
 #[test]
 fn exponential_holds_its_ends() {
-    let y = Lanes([-1e300, -700.0, 700.0, 1e300, f64::NEG_INFINITY, f64::INFINITY, 0.0, -0.0]).exp();
+    let y = Lanes([
+        -1e300,
+        -700.0,
+        700.0,
+        1e300,
+        f64::NEG_INFINITY,
+        f64::INFINITY,
+        0.0,
+        -0.0,
+    ])
+    .exp();
     assert_eq!(y.0[0], y.0[1]);
     assert_eq!(y.0[2], y.0[3]);
     assert_eq!(y.0[4], y.0[1]);

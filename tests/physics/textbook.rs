@@ -228,7 +228,10 @@ fn p_channel_cascode_source() {
     // begins to matter: x follows it.
     let s = cascode(1.4, flat(), flat());
     close(s.volts("x") - 1.4, s.state.points[1].vdssat.0[0], 1e-6);
-    assert_eq!(cascode(1.4 - 1e-3, flat(), flat()).state.points[1].gds.0[0], 0.0);
+    assert_eq!(
+        cascode(1.4 - 1e-3, flat(), flat()).state.points[1].gds.0[0],
+        0.0
+    );
     assert!(cascode(1.4 + 1e-3, flat(), flat()).state.points[1].gds.0[0] > 1e-7);
     // ro = VA/I and gm = 2 I/Vov at the bias point; the book's Ro is gm ro^2.
     let (gm, ro) = (2.0 * 50e-6 / 0.2, 0.3727e-6 * 6e6 / 50e-6);
@@ -274,7 +277,12 @@ fn one_to_one(vgs: f64, out: f64, vov: f64, early: f64, shift: f64) -> Solved {
     d.voltage("out", out)
         .current("0", "in", 100e-6)
         .nmos("in", "in", "0", square(vgs - vov, beta, 1.0, early))
-        .nmos("out", "in", "0", square(vgs - vov + shift, beta, 1.0, early));
+        .nmos(
+            "out",
+            "in",
+            "0",
+            square(vgs - vov + shift, beta, 1.0, early),
+        );
     d.solve()
 }
 
@@ -295,7 +303,9 @@ fn ratio_with_unequal_drains() {
 /// Gray, Hurst, Lewis, Meyer: the ratio's error from a threshold difference, (1 - dVT/Vov)^2 - 1.
 #[test]
 fn ratio_with_unequal_thresholds() {
-    for (shift, vov, error, linear) in [(0.010, 0.5, -0.0396, -0.04), (0.005, 0.2, -0.049375, -0.05)] {
+    for (shift, vov, error, linear) in
+        [(0.010, 0.5, -0.0396, -0.04), (0.005, 0.2, -0.049375, -0.05)]
+    {
         let s = one_to_one(1.2, 1.2, vov, NO_SLOPE, shift);
         close(s.amps("out") / 100e-6 - 1.0, error, 1e-6);
         // Linear, by the adjoint solution of the ideal mirror.
@@ -317,8 +327,18 @@ fn simple_and_cascode_sink() {
     d.voltage("out", 5.0)
         .voltage("g", 0.7 + vov)
         .voltage("c", 1.4 + vov + vov)
-        .nmos("y", "g", "0", with_slopes(100e-6, gm, ro, 0.7 + vov, 0.7 + vov))
-        .nmos("out", "c", "y", with_slopes(100e-6, gm, ro, 0.7 + vov, 4.3 - vov));
+        .nmos(
+            "y",
+            "g",
+            "0",
+            with_slopes(100e-6, gm, ro, 0.7 + vov, 0.7 + vov),
+        )
+        .nmos(
+            "out",
+            "c",
+            "y",
+            with_slopes(100e-6, gm, ro, 0.7 + vov, 4.3 - vov),
+        );
     let s = d.solve();
     close(s.amps("out"), 100e-6, 1e-9);
     let p = s.state.points[1];
@@ -332,9 +352,12 @@ fn simple_and_cascode_sink() {
 fn diode_and_resistor_reference() {
     let at = |vdd: f64| {
         let mut d = Draft::new();
-        d.voltage("vdd", vdd)
-            .resistor("vdd", "ref", 100e3)
-            .nmos("ref", "ref", "0", square(0.7, 110e-6, 2.0, NO_SLOPE));
+        d.voltage("vdd", vdd).resistor("vdd", "ref", 100e3).nmos(
+            "ref",
+            "ref",
+            "0",
+            square(0.7, 110e-6, 2.0, NO_SLOPE),
+        );
         d.solve().volts("ref")
     };
     close(at(5.0), 1.2814, 5e-5);
@@ -392,7 +415,8 @@ fn wide_swing_bias_devices() {
             .nmos("out", "c", "y", m(1.0 / (n * n)))
             .nmos("y", "g", "0", m(1.0));
         if third {
-            d.nmos("c", "c", "t", m(1.0)).nmos("t", "c", "0", m(1.0 / 3.0));
+            d.nmos("c", "c", "t", m(1.0))
+                .nmos("t", "c", "0", m(1.0 / 3.0));
         } else {
             d.nmos("c", "c", "0", m(1.0 / ((n + 1.0) * (n + 1.0))));
         }
@@ -415,7 +439,11 @@ fn wide_swing_bias_devices() {
         }
         assert!(above.conductance("out").abs() < 1e-9);
         let below = wide(limit - 0.05, third, n);
-        assert!(below.conductance("out") > 1e-7, "{}", below.conductance("out"));
+        assert!(
+            below.conductance("out") > 1e-7,
+            "{}",
+            below.conductance("out")
+        );
     }
 }
 
@@ -605,7 +633,9 @@ fn mismatch_of_one_to_n() {
     let mut pair = 0.0;
     for (n, share) in [(1, 1.0), (2, 0.8660254), (4, 0.7905694), (10, 0.7416198)] {
         let mut d = Draft::new();
-        d.voltage("out", 0.9).current("0", "in", 10e-6).nmos("in", "in", "0", m());
+        d.voltage("out", 0.9)
+            .current("0", "in", 10e-6)
+            .nmos("in", "in", "0", m());
         for _ in 0..n {
             d.nmos("out", "in", "0", m());
         }
@@ -648,6 +678,10 @@ fn mismatch_in_weak_inversion() {
     let one = 5e-3 / 2f64.sqrt();
     for amps in [5e-12, 10e-12, 20e-12] {
         let s = mirror(low, amps);
-        close(spread(&s, |_| (one, 0.0)), 0.1488, if amps == 10e-12 { 2e-3 } else { 2e-2 });
+        close(
+            spread(&s, |_| (one, 0.0)),
+            0.1488,
+            if amps == 10e-12 { 2e-3 } else { 2e-2 },
+        );
     }
 }
