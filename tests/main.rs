@@ -1,4 +1,5 @@
-//! The one integration binary: a plain list of modules.
+//! All integration tests, one module per part of the program.
 
 mod input;
 mod physics;
+mod report;

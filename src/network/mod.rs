@@ -5,6 +5,7 @@ pub mod bench;
 pub mod corners;
 pub mod detail;
 pub mod drawing;
+pub mod measure;
 
 use crate::cells::{CELLS, Shape, Size, Tech, Unit};
 use crate::device;

@@ -1,0 +1,464 @@
+//! Local search over plans: change one thing, keep it if the network gets cheaper.
+//!
+//! Where the linear programs above work with levels of collected error, a plan is priced exactly:
+//! every path adds up its own variances and its own signed errors. Moves: another shape, another
+//! input current, another parent, other units for a family; an output moved to another family; a
+//! family opened for an output; a family closed. A descent tries them in a fixed order until none
+//! helps; a perturbed restart (iterated local search, Lourenco, Martin, Stutzle 2003) leaves local
+//! optima.
+
+use super::candidates::Candidate;
+use super::plan::{Ledger, Member, Plan, Price};
+use rand::Rng;
+use rand_pcg::Pcg64Mcg;
+
+/// Units tried for an input leg.
+const UNITS: [u32; 13] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16, 20, 30, 40];
+
+/// What the search may use.
+#[derive(Debug, Clone)]
+pub struct Menu {
+    /// Candidates of each rail worth trying anywhere.
+    pub shapes: [Vec<usize>; 2],
+    /// Candidates worth opening a family for one output with, per output.
+    pub own: Vec<Vec<usize>>,
+    /// Input currents, A.
+    pub currents: Vec<f64>,
+}
+
+/// A plan with its score: area with every excess charged.
+#[derive(Debug, Clone)]
+pub struct Scored {
+    /// The plan.
+    pub plan: Plan,
+    /// Its price.
+    pub price: Price,
+    /// What the search minimises, m^2.
+    pub score: f64,
+}
+
+/// The search over one ledger.
+pub struct Search<'s, 'a> {
+    ledger: &'s Ledger<'a>,
+    menu: &'s Menu,
+    /// Area charged for an excess of one limit by its own size, m^2.
+    charge: f64,
+    /// Plans priced so far.
+    pub priced: u64,
+}
+
+impl<'s, 'a> Search<'s, 'a> {
+    /// A search that charges `charge` m^2 for exceeding one limit by 100 %.
+    pub fn new(ledger: &'s Ledger<'a>, menu: &'s Menu, charge: f64) -> Search<'s, 'a> {
+        Search {
+            ledger,
+            menu,
+            charge,
+            priced: 0,
+        }
+    }
+
+    /// Scores a plan.
+    pub fn score(&mut self, plan: Plan) -> Scored {
+        let (price, score) = self.value(&plan);
+        Scored { plan, price, score }
+    }
+
+    fn value(&mut self, plan: &Plan) -> (Price, f64) {
+        self.priced += 1;
+        let price = self.ledger.price(plan);
+        // Any excess at all costs something, so that feasible beats nearly feasible.
+        let step = if price.excess > 0.0 { 0.02 } else { 0.0 };
+        (price, price.area + self.charge * (price.excess + step))
+    }
+
+    /// A first plan: one family on the reference's rail, one on the other where outputs need it.
+    pub fn first(&mut self) -> Scored {
+        let reference = self.ledger.job.spec.reference;
+        let root = reference.rail();
+        let current = reference.current().0;
+        let mut best: Option<Scored> = None;
+        for &candidate in &self.menu.shapes[root as usize] {
+            if self.candidate(root as usize, candidate).needs_bias() && self.ledger.copies < 2 {
+                continue;
+            }
+            let bias = self
+                .candidate(root as usize, candidate)
+                .needs_bias()
+                .then_some((current, None));
+            let mut members = vec![Member {
+                rail: root,
+                candidate,
+                current,
+                units: 2,
+                parent: None,
+                bias,
+            }];
+            let needs_other = self.ledger.wants.iter().any(|w| w.rail != root);
+            if needs_other {
+                members.push(Member {
+                    rail: root.opposite(),
+                    candidate: self.menu.shapes[root.opposite() as usize][0],
+                    current: self.menu.currents[self.menu.currents.len() / 2],
+                    units: 2,
+                    parent: Some(0),
+                    bias: None,
+                });
+                if self
+                    .candidate(members[1].rail as usize, members[1].candidate)
+                    .needs_bias()
+                {
+                    members[1].bias = Some((self.menu.currents[0], Some(0)));
+                }
+            }
+            let legs = self
+                .ledger
+                .wants
+                .iter()
+                .map(|w| usize::from(w.rail != root))
+                .collect();
+            let scored = self.score(Plan { members, legs });
+            if best.as_ref().is_none_or(|b| scored.score < b.score) {
+                best = Some(scored);
+            }
+        }
+        best.expect("the menu offers shapes on the reference's rail")
+    }
+
+    fn candidate(&self, rail: usize, index: usize) -> &'a Candidate {
+        &self.ledger.candidates[rail][index]
+    }
+
+    /// Descends until no move helps.
+    pub fn descend(&mut self, start: Scored) -> Scored {
+        let mut best = start;
+        loop {
+            let before = best.score;
+            for f in (0..best.plan.members.len()).rev() {
+                if f < best.plan.members.len() {
+                    self.reshape(&mut best, f);
+                }
+            }
+            self.move_outputs(&mut best);
+            self.reparent(&mut best);
+            self.open(&mut best);
+            self.close(&mut best);
+            if best.score >= before * (1.0 - 1e-4) {
+                return best;
+            }
+        }
+    }
+
+    /// Iterated local search: `rounds` perturbations of the best plan.
+    pub fn explore(&mut self, start: Scored, rounds: usize, rng: &mut Pcg64Mcg) -> Scored {
+        let mut best = self.descend(start);
+        for _ in 0..rounds {
+            let shaken = self.shake(&best, rng);
+            let next = self.descend(shaken);
+            if next.score < best.score {
+                best = next;
+            }
+        }
+        best
+    }
+
+    /// Keeps a changed plan if it is cheaper.
+    fn offer(&mut self, best: &mut Scored, plan: &Plan) -> bool {
+        let (price, score) = self.value(plan);
+        let better = score < best.score * (1.0 - 1e-9);
+        if better {
+            *best = Scored {
+                plan: plan.clone(),
+                price,
+                score,
+            };
+        }
+        better
+    }
+
+    /// Best shape, current and units of one family, the rest as it is.
+    fn reshape(&mut self, best: &mut Scored, f: usize) {
+        let rail = best.plan.members[f].rail as usize;
+        let mut plan = best.plan.clone();
+        // Units and currents with the present shape first: few and often enough.
+        for &units in &UNITS {
+            plan.members[f].units = units;
+            self.offer(best, &plan);
+        }
+        plan.clone_from(&best.plan);
+        if plan.members[f].parent.is_some() {
+            for &current in &self.menu.currents {
+                for &units in &UNITS {
+                    plan.members[f].current = current;
+                    plan.members[f].units = units;
+                    self.offer(best, &plan);
+                }
+            }
+        }
+        plan.clone_from(&best.plan);
+        let menu = self.menu;
+        for &candidate in &menu.shapes[rail] {
+            if !self.place(&mut plan, f, candidate) {
+                continue;
+            }
+            self.offer(best, &plan);
+        }
+        plan.clone_from(&best.plan);
+        for &units in &UNITS {
+            plan.members[f].units = units;
+            self.offer(best, &plan);
+        }
+    }
+
+    /// Gives a family another shape, with a bias feed where it now needs one. False where it
+    /// cannot have one.
+    fn place(&self, plan: &mut Plan, f: usize, candidate: usize) -> bool {
+        let member = &mut plan.members[f];
+        let needs = self.candidate(member.rail as usize, candidate).needs_bias();
+        member.candidate = candidate;
+        if !needs {
+            member.bias = None;
+            return true;
+        }
+        if member.bias.is_none() {
+            let smallest = self.menu.currents[0];
+            member.bias = match member.parent {
+                Some(p) => Some((smallest, Some(p))),
+                None if self.ledger.copies > 1 => {
+                    Some((self.ledger.job.spec.reference.current().0, None))
+                }
+                None => return false,
+            };
+        }
+        true
+    }
+
+    fn move_outputs(&mut self, best: &mut Scored) {
+        for k in 0..best.plan.legs.len() {
+            let mut plan = best.plan.clone();
+            for f in 0..plan.members.len() {
+                if plan.members[f].rail == self.ledger.wants[k].rail {
+                    plan.legs[k] = f;
+                    self.offer(best, &plan);
+                }
+            }
+        }
+    }
+
+    /// Other parents and bias feeds for every family.
+    fn reparent(&mut self, best: &mut Scored) {
+        for f in 1..best.plan.members.len() {
+            let mut plan = best.plan.clone();
+            let rail = plan.members[f].rail;
+            for p in 0..f {
+                if plan.members[p].rail == rail {
+                    continue;
+                }
+                if plan.members[f].parent.is_some() {
+                    plan.members[f].parent = Some(p);
+                    self.offer(best, &plan);
+                }
+            }
+            plan.clone_from(&best.plan);
+            if plan.members[f].bias.is_some() {
+                for p in 0..f {
+                    if plan.members[p].rail == rail {
+                        continue;
+                    }
+                    for &current in &self.menu.currents {
+                        plan.members[f].bias = Some((current, Some(p)));
+                        self.offer(best, &plan);
+                    }
+                }
+            }
+        }
+    }
+
+    /// Opens a family for one output where that pays.
+    fn open(&mut self, best: &mut Scored) {
+        let menu = self.menu;
+        for k in 0..best.plan.legs.len() {
+            let rail = self.ledger.wants[k].rail;
+            let old = best.plan.clone();
+            let parents: Vec<usize> = (0..old.members.len())
+                .filter(|&p| old.members[p].rail != rail)
+                .collect();
+            let mut plan = old.clone();
+            let f = plan.members.len();
+            plan.legs[k] = f;
+            plan.members.push(Member {
+                rail,
+                candidate: menu.own[k].first().copied().unwrap_or(0),
+                current: menu.currents[0],
+                units: 1,
+                parent: None,
+                bias: None,
+            });
+            for &p in &parents {
+                for &current in &menu.currents {
+                    for &candidate in &menu.own[k] {
+                        let c = self.candidate(rail as usize, candidate);
+                        let member = &mut plan.members[f];
+                        member.parent = Some(p);
+                        member.current = current;
+                        member.candidate = candidate;
+                        member.bias = c.needs_bias().then_some((menu.currents[0], Some(p)));
+                        let Some(&units) = UNITS.iter().find(|&&n| {
+                            let unit = current / f64::from(n);
+                            unit <= self.ledger.wants[k].current * 1.001 && c.drawable(unit, n)
+                        }) else {
+                            continue;
+                        };
+                        member.units = units;
+                        self.offer(best, &plan);
+                    }
+                }
+            }
+            // Others on the rail may like the new family too.
+            if best.plan.members.len() > f {
+                self.move_outputs(best);
+            }
+        }
+        self.prune(best);
+    }
+
+    /// Drops families that serve nothing.
+    fn prune(&mut self, best: &mut Scored) {
+        while let Some(idle) = (1..best.plan.members.len())
+            .rev()
+            .find(|&f| !serves(&best.plan, f))
+        {
+            let plan = without(&best.plan, idle);
+            *best = self.score(plan);
+        }
+    }
+
+    /// Closes families whose legs others can carry cheaper.
+    fn close(&mut self, best: &mut Scored) {
+        let mut f = best.plan.members.len();
+        while f > 1 {
+            f -= 1;
+            if f >= best.plan.members.len() {
+                continue;
+            }
+            if let Some(plan) = self.closed(&best.plan, f) {
+                let mut trial = self.score(plan);
+                // The families that took over may want another shape.
+                if trial.score < best.score * 1.3 {
+                    for g in 0..trial.plan.members.len() {
+                        self.reshape(&mut trial, g);
+                    }
+                }
+                if trial.score < best.score * (1.0 - 1e-9) {
+                    *best = trial;
+                }
+            }
+        }
+    }
+
+    /// The plan without family `f`: its outputs and children go where they cost least.
+    fn closed(&mut self, plan: &Plan, f: usize) -> Option<Plan> {
+        let mut next = plan.clone();
+        let rail = plan.members[f].rail;
+        let heirs: Vec<usize> = (0..plan.members.len())
+            .filter(|&g| g != f && plan.members[g].rail == rail)
+            .collect();
+        if heirs.is_empty() {
+            return None;
+        }
+        for k in 0..next.legs.len() {
+            if next.legs[k] == f {
+                next.legs[k] = self.cheapest(&next, &heirs, |p, g| p.legs[k] = g);
+            }
+        }
+        for g in 0..next.members.len() {
+            let earlier: Vec<usize> = heirs.iter().copied().filter(|&h| h < g).collect();
+            if next.members[g].parent == Some(f) {
+                if earlier.is_empty() {
+                    return None;
+                }
+                next.members[g].parent =
+                    Some(self.cheapest(&next, &earlier, |p, h| p.members[g].parent = Some(h)));
+            }
+            if let Some((amps, Some(from))) = next.members[g].bias
+                && from == f
+            {
+                if earlier.is_empty() {
+                    return None;
+                }
+                let heir = self.cheapest(&next, &earlier, |p, h| {
+                    p.members[g].bias = Some((amps, Some(h)));
+                });
+                next.members[g].bias = Some((amps, Some(heir)));
+            }
+        }
+        Some(without(&next, f))
+    }
+
+    fn cheapest(&mut self, plan: &Plan, among: &[usize], set: impl Fn(&mut Plan, usize)) -> usize {
+        let mut trial = plan.clone();
+        let mut best = (f64::INFINITY, among[0]);
+        for &g in among {
+            set(&mut trial, g);
+            let (_, score) = self.value(&trial);
+            if score < best.0 {
+                best = (score, g);
+            }
+        }
+        best.1
+    }
+
+    /// A random change: close a family or throw several outputs and shapes about.
+    fn shake(&mut self, best: &Scored, rng: &mut Pcg64Mcg) -> Scored {
+        let mut plan = best.plan.clone();
+        if plan.members.len() > 2 && rng.random_bool(0.5) {
+            let f = rng.random_range(1..plan.members.len());
+            if let Some(next) = self.closed(&plan, f) {
+                plan = next;
+            }
+        }
+        for _ in 0..2 {
+            let f = rng.random_range(0..plan.members.len());
+            let shapes = &self.menu.shapes[plan.members[f].rail as usize];
+            let candidate = shapes[rng.random_range(0..shapes.len())];
+            let before = plan.members[f].clone();
+            if !self.place(&mut plan, f, candidate) {
+                plan.members[f] = before;
+            }
+            if plan.members[f].parent.is_some() {
+                let currents = &self.menu.currents;
+                plan.members[f].current = currents[rng.random_range(0..currents.len())];
+            }
+        }
+        let k = rng.random_range(0..plan.legs.len());
+        let homes: Vec<usize> = (0..plan.members.len())
+            .filter(|&f| plan.members[f].rail == self.ledger.wants[k].rail)
+            .collect();
+        plan.legs[k] = homes[rng.random_range(0..homes.len())];
+        self.score(plan)
+    }
+}
+
+/// Whether anything hangs on a family.
+fn serves(plan: &Plan, f: usize) -> bool {
+    plan.legs.contains(&f)
+        || plan
+            .members
+            .iter()
+            .any(|m| m.parent == Some(f) || matches!(m.bias, Some((_, Some(from))) if from == f))
+}
+
+/// A plan without a family that nothing hangs on.
+fn without(plan: &Plan, f: usize) -> Plan {
+    let down = |g: usize| if g > f { g - 1 } else { g };
+    let mut next = plan.clone();
+    next.members.remove(f);
+    for m in &mut next.members {
+        m.parent = m.parent.map(down);
+        m.bias = m.bias.map(|(amps, from)| (amps, from.map(down)));
+    }
+    for leg in &mut next.legs {
+        *leg = down(*leg);
+    }
+    next
+}

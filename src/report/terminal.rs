@@ -1,0 +1,151 @@
+//! The summary for a terminal: plain text, as wide as the terminal allows, no colour.
+
+use super::devices::columns;
+use super::{format, view, words};
+use crate::explore::Outcome;
+
+/// Least width that a summary is laid out for; narrower terminals wrap.
+const NARROWEST: usize = 40;
+
+/// The ranked networks and how the exploration ended, at most `width` columns wide.
+///
+/// Where a network's line is too long for the terminal, the error's corner and the cells stand on
+/// lines below it. When nothing fits, the nearest network's line is followed by one sentence per broken limit.
+pub fn summary(outcome: &Outcome, width: usize) -> String {
+    let width = width.max(NARROWEST);
+    let mut text = String::new();
+    let paragraph = |text: &mut String, words_: &str, hang: usize| {
+        for (index, line) in words::wrap(words_, width - hang).iter().enumerate() {
+            let indent = if index == 0 { 0 } else { hang };
+            text.push_str(&format!("{:indent$}{line}\n", ""));
+        }
+    };
+    paragraph(&mut text, &outcome.spec.title, 0);
+    paragraph(&mut text, &words::status(outcome), 0);
+    let networks = view::networks(outcome);
+    if !networks.is_empty() {
+        text.push('\n');
+        text.push_str(&table(&networks, width));
+    }
+    let broken = words::broken(outcome);
+    if !broken.is_empty() {
+        text.push('\n');
+        let limits = if broken.len() == 1 { "Limit" } else { "Limits" };
+        paragraph(
+            &mut text,
+            &format!("{limits} the nearest network breaks, worst first:"),
+            0,
+        );
+        for broken in broken {
+            paragraph(
+                &mut text,
+                &format!("- {}", words::broken_sentence(broken)),
+                2,
+            );
+        }
+    }
+    let failures: u64 = outcome
+        .work
+        .not_converged
+        .iter()
+        .map(|(_, number)| number)
+        .sum();
+    let work = &outcome.work;
+    text.push('\n');
+    paragraph(
+        &mut text,
+        &format!(
+            "{} of {} family shapes solved at every corner, {} excluded by closed forms, {} not \
+             converged; {} networks verified whole. Seed {}.",
+            work.solved,
+            work.shapes,
+            work.screened_out,
+            failures,
+            work.networks_verified,
+            outcome.spec.search.seed
+        ),
+        0,
+    );
+    text.push('\n');
+    for caution in words::CAUTIONS {
+        paragraph(&mut text, caution, 0);
+    }
+    text
+}
+
+/// Columns of the wide layout, and whether each is aligned to the right.
+const WIDE: [(&str, bool); 7] = [
+    ("rank", true),
+    ("area", true),
+    ("overhead current", true),
+    ("worst error", true),
+    ("at output, corner", false),
+    ("headroom margin", true),
+    ("cells", false),
+];
+
+/// Columns of the narrow layout; what is missing stands on a line of its own below each row.
+const NARROW: [(&str, bool); 5] = [
+    ("rank", true),
+    ("area", true),
+    ("overhead", true),
+    ("error", true),
+    ("margin", true),
+];
+
+fn table(networks: &[view::Shown<'_>], width: usize) -> String {
+    let rows: Vec<[String; WIDE.len()]> = networks.iter().map(row).collect();
+    let mut lines = vec![WIDE.map(|(name, _)| name.to_owned()).to_vec()];
+    lines.extend(rows.iter().map(|row| row.to_vec()));
+    let wide = columns(&lines, None, &WIDE.map(|(_, right)| right));
+    if wide.lines().all(|line| line.chars().count() <= width) {
+        return wide;
+    }
+    let mut lines = vec![NARROW.map(|(name, _)| name.to_owned()).to_vec()];
+    lines.extend(
+        rows.iter()
+            .map(|[rank, area, overhead, error, _, margin, _]| {
+                [rank, area, overhead, error, margin]
+                    .map(String::clone)
+                    .to_vec()
+            }),
+    );
+    let narrow = columns(&lines, None, &NARROW.map(|(_, right)| right));
+    let mut text = String::new();
+    for (index, line) in narrow.lines().enumerate() {
+        text.push_str(line);
+        text.push('\n');
+        // The header and its rule come first.
+        if let Some([.., at, _, cells]) = index.checked_sub(2).and_then(|index| rows.get(index)) {
+            let detail = format!("error at {at}; cells: {cells}");
+            for line in words::wrap(&detail, width - 6) {
+                text.push_str(&format!("      {line}\n"));
+            }
+        }
+    }
+    text
+}
+
+fn row(shown: &view::Shown<'_>) -> [String; WIDE.len()] {
+    let network = shown.network;
+    let figure = |name: &str| {
+        view::figure(network, name).map_or("-".to_owned(), |figure| {
+            format::quantity(figure.value, &figure.unit)
+        })
+    };
+    let error = view::worst_error(network);
+    let headroom = view::worst_headroom(network);
+    [
+        shown.rank(),
+        figure("area"),
+        figure("overhead_current"),
+        error.map_or("-".to_owned(), |output| format::percent(output.error)),
+        error.map_or("-".to_owned(), |output| {
+            format!("{}, {}", output.name, output.error_corner)
+        }),
+        headroom.map_or("-".to_owned(), |output| {
+            format::millivolts(output.headroom_margin)
+        }),
+        words::cells(network),
+    ]
+}
