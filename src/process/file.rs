@@ -33,8 +33,8 @@ impl<T: Read> Read for Sourced<T> {
     fn read(node: &Node, reader: &mut Reader<'_>) -> Option<Self> {
         let wanted = "a value with its source, {value: ..., source: ...}";
         let slots = reader.slots(node, wanted, Self::ENTRIES)?;
-        let value = reader.field(slots[0]);
-        reader.field::<Text>(slots[1]);
+        let value = reader.field(slots.values[0]);
+        reader.field::<Text>(slots.values[1]);
         Some(Sourced { value })
     }
 }

@@ -14,6 +14,8 @@ pub struct Permitted {
     pub most: &'static str,
     /// A value that people would write, or a range where the quantity is always a range.
     pub example: &'static str,
+    /// What to remember when a value lies outside the range; may be empty.
+    pub note: &'static str,
 }
 
 /// What can be wrong with the text of a quantity.
@@ -145,6 +147,7 @@ impl Permitted {
             least,
             most,
             example,
+            note,
         } = self;
         let found = found.trim();
         let write = format!("write it like {example}");
@@ -188,10 +191,13 @@ impl Permitted {
             }
             Fault::OutOfRange => (
                 format!("the {name} must lie between {least} and {most}"),
-                prefix_hint(found).into_iter().collect(),
+                prefix_hint(found)
+                    .into_iter()
+                    .chain((!note.is_empty()).then(|| (*note).to_owned()))
+                    .collect(),
             ),
             Fault::NotARange => (
-                format!("the {name} must be a range"),
+                format!("the {name} needs two values, found one"),
                 vec![range_hint(least, example)],
             ),
             Fault::NotASingle => (

@@ -16,10 +16,11 @@ pub trait Measure {
     const PERMITTED: Permitted;
 }
 
-/// Defines measures: `Name: Type = "name in a sentence", "least" to "most", like "example";`.
+/// Defines measures: `Name: Type = "name in a sentence", "least" to "most", like "example";`, and
+/// before the semicolon, where it helps, `, note "what to remember outside the range"`.
 macro_rules! quantities {
     ($( $(#[$doc:meta])+ $name:ident: $type:ty = $called:literal,
-        $least:literal to $most:literal, like $example:literal; )+) => {
+        $least:literal to $most:literal, like $example:literal $(, note $note:literal)?; )+) => {
         $(
             $(#[$doc])+
             #[derive(Debug, Clone, Copy, PartialEq)]
@@ -32,6 +33,7 @@ macro_rules! quantities {
                     least: $least,
                     most: $most,
                     example: $example,
+                    note: concat!($($note)?),
                 };
             }
         )+

@@ -232,6 +232,10 @@ fn token_length(rest: &str, text: Option<&str>) -> usize {
     }
     match text {
         Some(text) if !text.is_empty() && line.starts_with(text) => text.chars().count(),
+        _ if line.starts_with(['[', '{']) => {
+            let close = if line.starts_with('[') { ']' } else { '}' };
+            line.chars().position(|c| c == close).map_or(1, |at| at + 1)
+        }
         _ => {
             let end = line
                 .find([' ', '\t', ',', ']', '}', ':'])

@@ -44,6 +44,14 @@ struct Pending {
     hints: Vec<String>,
 }
 
+/// The values of a table, one slot for each of its entries.
+pub struct Slots<'n> {
+    /// The value's node, if the key is there.
+    pub values: Vec<Option<&'n Node>>,
+    /// Whether the key is there, be it with a faulty value or misspelt.
+    pub seen: Vec<bool>,
+}
+
 /// Collects faults of one file.
 pub struct Reader<'a> {
     source: &'a Source,
@@ -132,7 +140,7 @@ impl<'a> Reader<'a> {
         node: &'n Node,
         what: &str,
         entries: &[Entry],
-    ) -> Option<Vec<Option<&'n Node>>> {
+    ) -> Option<Slots<'n>> {
         let Value::Map(pairs) = &node.value else {
             self.wrong_type(node, what);
             return None;
@@ -191,12 +199,17 @@ impl<'a> Reader<'a> {
                 );
             }
         }
-        Some(
-            slots
+        Some(Slots {
+            seen: slots
+                .iter()
+                .zip(meant)
+                .map(|(slot, meant)| slot.is_some() || meant)
+                .collect(),
+            values: slots
                 .into_iter()
                 .map(|slot| slot.map(|(_, value)| value))
                 .collect(),
-        )
+        })
     }
 
     /// Reads the value of a slot.
