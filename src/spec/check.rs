@@ -210,7 +210,7 @@ fn reference(
         if needed && !file.has_key(key) {
             reader.fault(
                 file.owner,
-                format!("the key \"{key}\" is missing in the reference"),
+                format!("the reference needs the key \"{key}\""),
                 vec![
                     "only a reference made by a resistor, \"from: resistor\", goes without".into(),
                 ],

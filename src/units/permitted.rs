@@ -170,22 +170,21 @@ impl Permitted {
                 (format!("the {name} has the unknown unit {unit}"), hints)
             }
             Fault::WrongUnit { unit, found } => {
-                let wanted = self
-                    .dimension()
-                    .name()
-                    .map_or_else(|| "another unit".to_owned(), |wanted| wanted.to_owned());
                 let given = found
                     .name()
                     .map_or_else(String::new, |given| format!(", {given}"));
-                let message = if unit.is_empty() {
-                    format!("the {name} has no unit")
-                } else if wanted == "a bare number" {
-                    format!(
-                        "the {name} is a bare number but has the unit {}",
-                        quote(unit)
-                    )
-                } else {
-                    format!("the {name} must be {wanted}, found {}{given}", quote(unit))
+                let message = match self.dimension().name() {
+                    _ if unit.is_empty() => format!("the {name} has no unit"),
+                    Some("a bare number") => {
+                        format!(
+                            "the {name} is a bare number but has the unit {}",
+                            quote(unit)
+                        )
+                    }
+                    Some(wanted) => {
+                        format!("the {name} must be {wanted}, found {}{given}", quote(unit))
+                    }
+                    None => format!("the {name} has the wrong unit {}{given}", quote(unit)),
                 };
                 (message, vec![write])
             }
@@ -216,7 +215,8 @@ impl Permitted {
     }
 }
 
-/// Units come from the file: no control characters, no endless text in a message.
+/// Units come from the file: no control characters, no endless text in a message. (`diag` has the
+/// same for its own row.)
 fn quote(text: &str) -> String {
     let short: String = text
         .chars()

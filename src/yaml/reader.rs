@@ -142,7 +142,7 @@ impl<'a> Reader<'a> {
         entries: &[Entry],
     ) -> Option<Slots<'n>> {
         let Value::Map(pairs) = &node.value else {
-            self.wrong_type(node, what);
+            self.wrong_type(node, &format!("a table of keys for {what}"));
             return None;
         };
         let mut slots: Vec<Option<(&Node, &Node)>> = vec![None; entries.len()];
@@ -150,16 +150,8 @@ impl<'a> Reader<'a> {
         let mut meant = vec![false; entries.len()];
         for (key, value) in pairs {
             let Value::Text(word) = &key.value else {
-                let id = if matches!(key.value, Value::Null) {
-                    node.owner
-                } else {
-                    key.id
-                };
-                self.fault(
-                    id,
-                    format!("expected a key, found {}", key.value.kind()),
-                    vec![],
-                );
+                let message = format!("expected a key, found {}", key.value.kind());
+                self.fault(key.id, message, vec![]);
                 continue;
             };
             match entries.iter().position(|entry| entry.key == word) {
@@ -194,7 +186,7 @@ impl<'a> Reader<'a> {
             if entry.required && slots[at].is_none() && !meant[at] {
                 self.fault(
                     node.owner,
-                    format!("the key \"{}\" is missing in {what}", entry.key),
+                    format!("{what} needs the key \"{}\"", entry.key),
                     vec![],
                 );
             }
