@@ -45,6 +45,9 @@ macro_rules! quantities {
 }
 pub(crate) use quantities;
 
+/// Loose: a word, or the 1/V of a reciprocal; the reader knows units, an editor need not.
+const UNIT_PATTERN: &str = r"\s*([^\d\s.,]|1/).*";
+
 const NUMBER_PATTERN: &str = r"[+\-\u2212]?(\d+\.?\d*|\.\d+)([eE][+\-]?\d+)?";
 
 fn explain(reader: &mut Reader<'_>, node: &Node, permitted: &Permitted, fault: &Fault, text: &str) {
@@ -96,13 +99,13 @@ impl<M: Measure> JsonSchema for Quantity<M> {
         if permitted.example.parse::<f64>().is_ok() {
             return json_schema!({ "type": "number", "minimum": least, "maximum": most });
         }
-        let kinds: &[&str] = match permitted.dimension() {
-            Dimension::NUMBER => &["string", "number"],
-            _ => &["string"],
+        let kinds = match permitted.dimension() {
+            Dimension::NUMBER => serde_json::json!(["string", "number"]),
+            _ => "string".into(),
         };
         json_schema!({
             "type": kinds,
-            "pattern": format!(r"^\s*{NUMBER_PATTERN}\s*[^\d\s.,].*$"),
+            "pattern": format!(r"^\s*{NUMBER_PATTERN}{UNIT_PATTERN}$"),
             "examples": [permitted.example],
             "$comment": format!("{} to {}", permitted.least, permitted.most),
         })
@@ -166,7 +169,7 @@ impl<M: Measure> Read for Fixable<M> {
 }
 
 fn range_schema(permitted: Permitted, single: bool) -> Schema {
-    let unit = r"\s*[^\d\s.,].*";
+    let unit = UNIT_PATTERN;
     let pattern = if single {
         format!(r"^\s*({NUMBER_PATTERN}.* to )?\s*{NUMBER_PATTERN}{unit}$")
     } else {
