@@ -8,10 +8,11 @@ use super::quantities;
 use super::{
     Accuracy, AccuracyOf, Limits, Output, Reference, Search, Spec, Target, Temperatures, defaults,
 };
-use crate::diag::{Diagnostics, closest, either, quote};
+use crate::diag::{Diagnostics, closest, either, quote, read_text};
 use crate::units::{Amp, Kelvin, Range, Volt, percent};
 use crate::yaml::{At, Either, Measure, Read, Reader, Source};
 use std::collections::BTreeMap;
+use std::path::Path;
 
 /// Words that a spec may use and that this module cannot know.
 #[derive(Debug, Clone, Copy)]
@@ -41,6 +42,19 @@ pub(super) struct Ids {
     pub(super) corners: Vec<u32>,
     pub(super) corners_list: u32,
     pub(super) reference_from: u32,
+}
+
+/// Reads the spec in a file; its stem becomes the name of the spec.
+///
+/// # Errors
+/// Why the file cannot be read, or every fault in it, in its order, each with its place.
+pub fn load(path: &Path, vocabulary: &Vocabulary<'_>) -> Result<Located, Diagnostics> {
+    let shown = path.display().to_string();
+    let text = read_text(path).map_err(|fault| fault.at(&shown))?;
+    let stem = path
+        .file_stem()
+        .map_or_else(String::new, |stem| stem.to_string_lossy().into_owned());
+    read(&text, &stem, &shown, vocabulary)
 }
 
 /// Reads a spec.

@@ -7,7 +7,7 @@ mod file;
 mod quantities;
 
 pub use card::{CardFacts, check_against_card};
-pub use check::{Located, Vocabulary, read};
+pub use check::{Located, Vocabulary, load, read};
 pub use quantities::ALL as QUANTITIES;
 
 use crate::units::{Amp, Kelvin, Ohm, Range, SquareMetre, Volt, Watt};

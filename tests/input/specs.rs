@@ -4,7 +4,7 @@
 use super::{full_spec, read_spec, shipped_specs};
 use biasloom::diag::Diagnostics;
 use biasloom::process::{self, SHIPPED};
-use biasloom::spec::{AccuracyOf, Effort, Flow, Rail, Reference, Target};
+use biasloom::spec::{self, AccuracyOf, Effort, Flow, Rail, Reference, Target, Vocabulary};
 use biasloom::units::{Amp, Kelvin, Ohm, Range, Volt};
 use proptest::prelude::*;
 use std::time::{Duration, Instant};
@@ -35,6 +35,24 @@ fn every_shipped_spec_is_read_without_a_warning() {
         assert!(text.starts_with("# "), "{name} explains itself first");
         assert!(text.contains("# |"), "{name} shows its table");
     }
+}
+
+#[test]
+fn a_file_is_named_by_its_stem_and_by_its_path() {
+    let folder = std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("specs");
+    let cards = process::shipped_names();
+    let vocabulary = Vocabulary {
+        figures: super::FIGURES,
+        cards: &cards,
+    };
+    let located = spec::load(&folder.join("low-voltage.yaml"), &vocabulary).unwrap();
+    assert_eq!(located.spec.name, "low-voltage");
+    let faults = spec::load(&folder.join("none.yaml"), &vocabulary).unwrap_err();
+    let shown = faults.render(false);
+    assert!(
+        shown.contains("none.yaml: there is no such file"),
+        "{shown}"
+    );
 }
 
 #[test]
