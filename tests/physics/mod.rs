@@ -4,6 +4,7 @@ mod convergence;
 mod devices;
 mod draft;
 mod mirrors;
+mod networks;
 mod numeric;
 mod support;
 mod textbook;
