@@ -3,6 +3,7 @@
 mod convergence;
 mod devices;
 mod draft;
+mod golden;
 mod mirrors;
 mod networks;
 mod numeric;
