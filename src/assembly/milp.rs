@@ -29,7 +29,7 @@ pub struct Assembled {
 
 /// Chooses among `columns`; `None` where no choice serves every output, or none was found within
 /// the node limit.
-pub fn assemble(ledger: &Ledger, feeds: &Feeds, columns: &[Column]) -> Option<Assembled> {
+pub fn assemble(ledger: &Ledger, columns: &[Column]) -> Option<Assembled> {
     let mut vars = ProblemVariables::new();
     let x: Vec<Variable> = columns
         .iter()
@@ -94,11 +94,9 @@ pub fn assemble(ledger: &Ledger, feeds: &Feeds, columns: &[Column]) -> Option<As
     let copies = ledger.copies as f64;
     model.add_constraint(constraint!(references <= copies));
     // The node limit is the solver's own option; good_lp passes on a time limit only.
-    let options = ::microlp::SolveOptions {
-        node_limit: Some(NODES as _),
-        mip_gap: GAP,
-        ..::microlp::SolveOptions::default()
-    };
+    let mut options = ::microlp::SolveOptions::default();
+    options.node_limit = Some(NODES as _);
+    options.mip_gap = GAP;
     let solution = model
         .as_inner()
         .solve_with(options)
@@ -106,7 +104,7 @@ pub fn assemble(ledger: &Ledger, feeds: &Feeds, columns: &[Column]) -> Option<As
         .into_solution()
         .ok()?;
     let proved = solution.gap().is_some_and(|g| g <= GAP * 1.001);
-    let values: Vec<f64> = solution.iter().map(|(_, &v)| v).collect();
+    let values: Vec<f64> = solution.iter().map(|(_, v)| v).collect();
     let chosen: Vec<usize> = x
         .iter()
         .enumerate()
