@@ -8,9 +8,11 @@
 //! optima.
 
 use super::candidates::Candidate;
-use super::plan::{Ledger, Member, Plan, Price};
+use super::columns::{Feeds, shortlist};
+use super::plan::{Clerk, Ledger, Member, Plan, Price, Tally};
 use rand::Rng;
 use rand_pcg::Pcg64Mcg;
+use std::sync::atomic::{AtomicBool, Ordering};
 
 /// Units tried for an input leg.
 const UNITS: [u32; 13] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16, 20, 30, 40];
@@ -24,6 +26,50 @@ pub struct Menu {
     pub own: Vec<Vec<usize>>,
     /// Input currents, A.
     pub currents: Vec<f64>,
+    /// Area charged for an excess of one limit by its own size, m^2.
+    pub charge: f64,
+}
+
+impl Menu {
+    /// A menu for a ledger: the candidates that win some contest, and per output a dozen of those
+    /// that can serve it, from the smallest leg to the largest.
+    pub fn of(ledger: &Ledger, feeds: &Feeds) -> Menu {
+        const OWN: usize = 16;
+        let mut shapes = shortlist(ledger, feeds);
+        for (rail, list) in shapes.iter_mut().enumerate() {
+            if list.is_empty() {
+                // Nothing can serve here; the nearest network is still to be named.
+                let n = ledger.candidates[rail].len();
+                list.extend((0..n).step_by(n.div_ceil(64).max(1)));
+            }
+        }
+        let mut charge = 0.0;
+        let own = ledger
+            .wants
+            .iter()
+            .enumerate()
+            .map(|(k, want)| {
+                let rail = want.rail as usize;
+                let mut list: Vec<(f64, usize)> = shapes[rail]
+                    .iter()
+                    .filter(|&&i| ledger.candidates[rail][i].outputs[k].is_some())
+                    .map(|&i| (ledger.candidates[rail][i].leg_area(want.current, 1.0), i))
+                    .collect();
+                list.sort_by(|a, b| a.0.total_cmp(&b.0));
+                charge += want.count * list.get(list.len() / 2).map_or(0.0, |x| x.0);
+                let step = list.len().div_ceil(OWN).max(1);
+                list.into_iter().step_by(step).map(|(_, i)| i).collect()
+            })
+            .collect();
+        // An excess of 1 % costs about a tenth of the whole.
+        let charge = 10.0 * charge.max(1e-10);
+        Menu {
+            shapes,
+            own,
+            currents: feeds.currents.clone(),
+            charge,
+        }
+    }
 }
 
 /// A plan with its score: area with every excess charged.
@@ -43,18 +89,24 @@ pub struct Search<'s, 'a> {
     menu: &'s Menu,
     /// Area charged for an excess of one limit by its own size, m^2.
     charge: f64,
-    /// Plans priced so far.
-    pub priced: u64,
+    stop: &'s AtomicBool,
+    clerk: Clerk<'s, 'a>,
+    /// Of the plan that changes are tried on.
+    base: Tally,
+    scratch: Tally,
 }
 
 impl<'s, 'a> Search<'s, 'a> {
-    /// A search that charges `charge` m^2 for exceeding one limit by 100 %.
-    pub fn new(ledger: &'s Ledger<'a>, menu: &'s Menu, charge: f64) -> Search<'s, 'a> {
+    /// A search over a ledger; it returns early once `stop` is set.
+    pub fn new(ledger: &'s Ledger<'a>, menu: &'s Menu, stop: &'s AtomicBool) -> Search<'s, 'a> {
         Search {
             ledger,
             menu,
-            charge,
-            priced: 0,
+            charge: menu.charge,
+            stop,
+            clerk: Clerk::new(ledger),
+            base: Tally::new(),
+            scratch: Tally::new(),
         }
     }
 
@@ -64,12 +116,25 @@ impl<'s, 'a> Search<'s, 'a> {
         Scored { plan, price, score }
     }
 
+    /// Plans priced so far.
+    pub fn priced(&self) -> u64 {
+        self.clerk.priced
+    }
+
     fn value(&mut self, plan: &Plan) -> (Price, f64) {
-        self.priced += 1;
-        let price = self.ledger.price(plan);
+        let price = self.clerk.price(plan, &mut self.scratch);
+        (price, self.charged(&price))
+    }
+
+    fn charged(&self, price: &Price) -> f64 {
         // Any excess at all costs something, so that feasible beats nearly feasible.
         let step = if price.excess > 0.0 { 0.02 } else { 0.0 };
-        (price, price.area + self.charge * (price.excess + step))
+        price.area + self.charge * (price.excess + step)
+    }
+
+    /// Makes `plan` the one that changes are tried on.
+    fn rebase(&mut self, plan: &Plan) {
+        self.clerk.price(plan, &mut self.base);
     }
 
     /// A first plan: one family on the reference's rail, one on the other where outputs need it.
@@ -143,16 +208,23 @@ impl<'s, 'a> Search<'s, 'a> {
             self.reparent(&mut best);
             self.open(&mut best);
             self.close(&mut best);
-            if best.score >= before * (1.0 - 1e-4) {
+            if best.score >= before * (1.0 - 1e-4) || self.stopped() {
                 return best;
             }
         }
+    }
+
+    fn stopped(&self) -> bool {
+        self.stop.load(Ordering::Relaxed)
     }
 
     /// Iterated local search: `rounds` perturbations of the best plan.
     pub fn explore(&mut self, start: Scored, rounds: usize, rng: &mut Pcg64Mcg) -> Scored {
         let mut best = self.descend(start);
         for _ in 0..rounds {
+            if self.stopped() {
+                break;
+            }
             let shaken = self.shake(&best, rng);
             let next = self.descend(shaken);
             if next.score < best.score {
@@ -162,28 +234,31 @@ impl<'s, 'a> Search<'s, 'a> {
         best
     }
 
-    /// Keeps a changed plan if it is cheaper.
-    fn offer(&mut self, best: &mut Scored, plan: &Plan) -> bool {
-        let (price, score) = self.value(plan);
+    /// Keeps a plan if it is cheaper. It differs from the base plan in family `touched` alone.
+    fn offer(&mut self, best: &mut Scored, plan: &Plan, touched: usize) -> bool {
+        let price = self
+            .clerk
+            .reprice(plan, &self.base, &mut self.scratch, touched);
+        let score = self.charged(&price);
         let better = score < best.score * (1.0 - 1e-9);
         if better {
-            *best = Scored {
-                plan: plan.clone(),
-                price,
-                score,
-            };
+            best.plan.clone_from(plan);
+            best.price = price;
+            best.score = score;
+            std::mem::swap(&mut self.base, &mut self.scratch);
         }
         better
     }
 
     /// Best shape, current and units of one family, the rest as it is.
     fn reshape(&mut self, best: &mut Scored, f: usize) {
+        self.rebase(&best.plan);
         let rail = best.plan.members[f].rail as usize;
         let mut plan = best.plan.clone();
         // Units and currents with the present shape first: few and often enough.
         for &units in &UNITS {
             plan.members[f].units = units;
-            self.offer(best, &plan);
+            self.offer(best, &plan, f);
         }
         plan.clone_from(&best.plan);
         if plan.members[f].parent.is_some() {
@@ -191,7 +266,7 @@ impl<'s, 'a> Search<'s, 'a> {
                 for &units in &UNITS {
                     plan.members[f].current = current;
                     plan.members[f].units = units;
-                    self.offer(best, &plan);
+                    self.offer(best, &plan, f);
                 }
             }
         }
@@ -201,12 +276,12 @@ impl<'s, 'a> Search<'s, 'a> {
             if !self.place(&mut plan, f, candidate) {
                 continue;
             }
-            self.offer(best, &plan);
+            self.offer(best, &plan, f);
         }
         plan.clone_from(&best.plan);
         for &units in &UNITS {
             plan.members[f].units = units;
-            self.offer(best, &plan);
+            self.offer(best, &plan, f);
         }
     }
 
@@ -234,12 +309,13 @@ impl<'s, 'a> Search<'s, 'a> {
     }
 
     fn move_outputs(&mut self, best: &mut Scored) {
+        self.rebase(&best.plan);
         for k in 0..best.plan.legs.len() {
             let mut plan = best.plan.clone();
             for f in 0..plan.members.len() {
                 if plan.members[f].rail == self.ledger.wants[k].rail {
                     plan.legs[k] = f;
-                    self.offer(best, &plan);
+                    self.offer(best, &plan, f);
                 }
             }
         }
@@ -247,6 +323,7 @@ impl<'s, 'a> Search<'s, 'a> {
 
     /// Other parents and bias feeds for every family.
     fn reparent(&mut self, best: &mut Scored) {
+        self.rebase(&best.plan);
         for f in 1..best.plan.members.len() {
             let mut plan = best.plan.clone();
             let rail = plan.members[f].rail;
@@ -256,7 +333,7 @@ impl<'s, 'a> Search<'s, 'a> {
                 }
                 if plan.members[f].parent.is_some() {
                     plan.members[f].parent = Some(p);
-                    self.offer(best, &plan);
+                    self.offer(best, &plan, f);
                 }
             }
             plan.clone_from(&best.plan);
@@ -267,7 +344,7 @@ impl<'s, 'a> Search<'s, 'a> {
                     }
                     for &current in &self.menu.currents {
                         plan.members[f].bias = Some((current, Some(p)));
-                        self.offer(best, &plan);
+                        self.offer(best, &plan, f);
                     }
                 }
             }
@@ -294,6 +371,11 @@ impl<'s, 'a> Search<'s, 'a> {
                 parent: None,
                 bias: None,
             });
+            let Some(&first) = parents.first() else {
+                continue;
+            };
+            plan.members[f].parent = Some(first);
+            self.rebase(&plan);
             for &p in &parents {
                 for &current in &menu.currents {
                     for &candidate in &menu.own[k] {
@@ -310,7 +392,7 @@ impl<'s, 'a> Search<'s, 'a> {
                             continue;
                         };
                         member.units = units;
-                        self.offer(best, &plan);
+                        self.offer(best, &plan, f);
                     }
                 }
             }
