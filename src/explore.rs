@@ -147,7 +147,7 @@ fn networks(
             .par_iter()
             .enumerate()
             .map(|(i, &budget)| {
-                let near = |j: usize| j.abs_diff(i) <= 2;
+                let near = |j: usize| j.abs_diff(i) <= 1;
                 let plans: Vec<&Plan> = (0..best.len())
                     .filter(|&j| near(j))
                     .map(|j| &best[j].plan)
@@ -375,16 +375,16 @@ impl Thoroughness {
                 levels: 5,
                 column_rounds: 8,
                 nodes: 60,
-                polish: polish(3, 15, (0, 0)),
+                polish: polish(2, 8, (4, 2)),
             },
             Effort::Normal => Thoroughness {
                 ladder: 12,
-                rounds: 3,
+                rounds: 2,
                 generations: 3,
                 levels: 6,
-                column_rounds: 20,
-                nodes: 150,
-                polish: polish(4, 25, (8, 6)),
+                column_rounds: 12,
+                nodes: 100,
+                polish: polish(3, 12, (6, 4)),
             },
             Effort::Thorough => Thoroughness {
                 ladder: 20,

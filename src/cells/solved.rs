@@ -161,22 +161,19 @@ struct Template {
 
 fn draw_template(
     cell: usize,
-    rail: Rail,
+    tech: &Tech,
     unit: &Unit,
     current: f64,
     probes: &[f64],
 ) -> (Draw, Template) {
     let mut draw = Draw::new();
-    draw.rail = rail;
+    draw.rail = tech.rail;
+    let least_width = tech.mosfet().width.least.0;
     let input = draw.node("", unit.expected.input);
     draw.current(input, current);
-    let bias = unit.bias.map(|size| {
+    let bias = unit.bias_size(current, least_width).map(|size| {
         let node = draw.node("", unit.expected.cascode);
         draw.current(node, current);
-        let size = super::Size {
-            width: size.width * current,
-            length: size.length,
-        };
         (node, size)
     });
     let lines: Lines = CELLS[cell].input(&mut draw, unit, 1, &Feed { input, bias });
@@ -289,7 +286,7 @@ impl<'a> Solver<'a> {
             .unit(&self.tech, shape, self.current)
             .ok_or(Failure::NoSize)?;
         let (draw, template) =
-            draw_template(self.cell, self.tech.rail, &unit, self.current, &self.probes);
+            draw_template(self.cell, &self.tech, &unit, self.current, &self.probes);
         self.expected = template;
         if self.groups.is_empty() {
             self.make_groups(&draw.netlist);

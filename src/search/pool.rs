@@ -17,9 +17,9 @@ const CHUNK: usize = 64;
 /// The grid of one cell.
 fn grid(tech: &Tech, cell: usize, effort: Effort, headroom: f64) -> Vec<Shape> {
     let (lengths, inversions, cascodes, drops) = match effort {
-        Effort::Quick => (10, 9, 2, 2),
-        Effort::Normal => (16, 13, 3, 3),
-        Effort::Thorough => (26, 21, 4, 4),
+        Effort::Quick => (9, 8, 2, 1),
+        Effort::Normal => (12, 10, 2, 2),
+        Effort::Thorough => (20, 16, 3, 3),
     };
     let mosfet = tech.mosfet();
     let (shortest, longest) = (mosfet.length.least.0, mosfet.length.most.0);
