@@ -112,7 +112,7 @@ fn networks(
     step();
     // The overhead that the least area wants, where nothing bounds it.
     let most = limit.min(top.price.overhead);
-    let budgets: Vec<f64> = (0..effort.ladder)
+    let mut budgets: Vec<f64> = (0..effort.ladder)
         .map(|i| most * LADDER_STEP.powi(i as i32))
         .collect();
     let mut found: Vec<Scored> = budgets
@@ -136,13 +136,18 @@ fn networks(
             let Some(refined) = refined else { continue };
             let plan = shop.shelve(refined, work);
             let scored = shop.score(budgets[i], &plan);
-            if scored.score < best[i].score {
-                best[i] = scored;
-            }
+            // What a rung inherited from its neighbour may exceed its own budget.
+            let held = shop.score(budgets[i], &best[i].plan);
+            best[i] = if scored.score < held.score {
+                scored
+            } else {
+                held
+            };
         }
         if generation + 1 == effort.generations || stop.load(Ordering::Relaxed) {
             break;
         }
+        spread(&mut budgets, &mut best);
         let next: Vec<(Scored, Option<bool>)> = budgets
             .par_iter()
             .enumerate()
@@ -208,6 +213,49 @@ fn networks(
         out.extend(best);
     }
     out
+}
+
+/// Moves rungs that found nothing of their own into the widest gaps of the front: an epsilon
+/// sweep whose steps follow the front. Budgets stay in falling order, each with its best so far.
+fn spread(budgets: &mut Vec<f64>, best: &mut Vec<Scored>) {
+    /// Rungs closer than this (ratio) would find the same network again.
+    const CLOSE: f64 = 1.03;
+    let points: Vec<Vec<f64>> = best
+        .iter()
+        .map(|s| vec![s.score, s.price.overhead])
+        .collect();
+    let kept: Vec<usize> = front::nondominated(&points)
+        .into_iter()
+        .filter(|&i| best[i].price.excess == 0.0)
+        .collect();
+    if kept.is_empty() {
+        return;
+    }
+    let idle = budgets.len() - kept.len();
+    // A kept rung asks for what it found and no more: the next one must do with less.
+    let mut rungs: Vec<(f64, Scored)> = kept
+        .iter()
+        .map(|&i| (best[i].price.overhead, best[i].clone()))
+        .collect();
+    rungs.sort_by(|a, b| b.0.total_cmp(&a.0));
+    // Below the last: where the ladder ended without a network, somewhere between.
+    let floor = budgets
+        .last()
+        .copied()
+        .unwrap_or(0.0)
+        .min(rungs[rungs.len() - 1].0 * 0.9);
+    for _ in 0..idle {
+        let ratio = |i: usize| rungs[i].0 / rungs.get(i + 1).map_or(floor, |r| r.0);
+        let widest = (0..rungs.len()).fold(0, |w, i| if ratio(i) > ratio(w) { i } else { w });
+        if ratio(widest) < CLOSE * CLOSE {
+            break;
+        }
+        let budget = rungs[widest].0 / ratio(widest).sqrt();
+        let start = rungs[widest].1.clone();
+        rungs.insert(widest + 1, (budget, start));
+    }
+    *budgets = rungs.iter().map(|r| r.0).collect();
+    *best = rungs.into_iter().map(|r| r.1).collect();
 }
 
 /// Counts a MILP that ended in a network: proved, or stopped at its limit.
