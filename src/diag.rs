@@ -21,9 +21,9 @@ pub enum Severity {
 pub struct Place {
     /// Path as the user gave it.
     pub file: String,
-    /// Line, from 1.
+    /// Line, from 1; 0 where the file as a whole is meant.
     pub line: usize,
-    /// Column in characters, from 1.
+    /// Column in characters, from 1; 0 where the file as a whole is meant.
     pub column: usize,
     /// Characters marked; at least 1.
     pub length: usize,

@@ -19,5 +19,5 @@ pub use kinds::{
 };
 pub(crate) use kinds::{choice, quantities};
 pub use node::{Node, Source, Value};
-pub use reader::{At, Entry, Read, Reader, described};
+pub use reader::{At, Entry, Read, Reader, Slots, described};
 pub(crate) use record::record;

@@ -17,12 +17,11 @@ impl Curve {
     /// interval of its two neighbours, so a table that falls gives a curve that falls: the monotone
     /// scheme of Fritsch & Carlson, SIAM J. Numer. Anal. 17 (1980) 238-246. Its first derivative
     /// over ln L is continuous. Outside the table the end values hold: a search that reaches past
-    /// the last measured length must not live on extrapolation. Lengths that are not positive get
-    /// the first entry.
+    /// the last measured length must not live on extrapolation. A length that is no number
+    /// gets the first entry.
     pub fn at(&self, length: f64) -> f64 {
         let last = self.values.len() - 1;
-        // The negation sends NaN to the first entry as well.
-        if last == 0 || !(length > self.lengths[0]) {
+        if last == 0 || length.is_nan() || length <= self.lengths[0] {
             return self.values[0];
         }
         if length >= self.lengths[last] {

@@ -3,8 +3,8 @@
 
 use super::quantities::*;
 use crate::yaml::{
-    At, Either, Entry, List, Measure, Name, Node, Quantity, Read, Reader, Span, Text, choice,
-    described, record,
+    At, Either, Entry, List, Measure, Name, Node, Quantity, Read, Reader, Span, Text, Value,
+    choice, described, record,
 };
 use schemars::{JsonSchema, Schema, SchemaGenerator, json_schema};
 use std::borrow::Cow;
@@ -31,10 +31,13 @@ impl<T> Sourced<T> {
 
 impl<T: Read> Read for Sourced<T> {
     fn read(node: &Node, reader: &mut Reader<'_>) -> Option<Self> {
-        let wanted = "a value with its source, {value: ..., source: ...}";
-        let slots = reader.slots(node, wanted, Self::ENTRIES)?;
-        let value = reader.field(slots[0]);
-        reader.field::<Text>(slots[1]);
+        if !matches!(node.value, Value::Map(_)) {
+            reader.wrong_type(node, "a value with its source, {value: ..., source: ...}");
+            return None;
+        }
+        let slots = reader.slots(node, "a value", Self::ENTRIES)?;
+        let value = reader.field(slots.values[0]);
+        reader.field::<Text>(slots.values[1]);
         Some(Sourced { value })
     }
 }

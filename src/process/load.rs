@@ -31,7 +31,7 @@ pub fn shipped_names() -> Vec<&'static str> {
 
 /// Whether the name of a card is a path rather than a shipped name.
 fn is_path(name: &str) -> bool {
-    name.ends_with(".yaml") || name.ends_with(".yml") || name.contains(['/', '\\'])
+    name.ends_with(".yaml") || name.ends_with(".yml")
 }
 
 impl Loaded {

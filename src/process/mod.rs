@@ -68,6 +68,7 @@ pub struct Mosfet {
 
 /// Current law of a transistor.
 #[derive(Debug, Clone, PartialEq)]
+#[allow(clippy::large_enum_variant, reason = "there are two of them per card")]
 pub enum Law {
     /// Charge-based, all regions.
     Charge(ChargeLaw),

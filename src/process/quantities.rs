@@ -1,5 +1,5 @@
 //! The quantities of a process card: name, plausible range, example. The ranges are wide enough for
-//! every silicon MOS process from 10 um to FinFET-free deep submicron, and narrow enough to catch a
+//! every planar silicon MOS process, and narrow enough to catch a
 //! slip of a thousand.
 
 use crate::yaml::quantities;

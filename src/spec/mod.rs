@@ -1,5 +1,15 @@
 //! What the designer asks for: a [`Spec`] with nothing optional left open and nothing unchecked.
 
+mod card;
+mod check;
+pub mod defaults;
+mod file;
+mod quantities;
+
+pub use card::{CardFacts, check_against_card};
+pub use check::{Located, Vocabulary, load, read};
+pub use quantities::ALL as QUANTITIES;
+
 use crate::units::{Amp, Kelvin, Ohm, Range, SquareMetre, Volt, Watt};
 use serde::Serialize;
 
@@ -200,4 +210,11 @@ impl Spec {
             Target::Ratio(ratio) => Amp(ratio * self.reference.current().0),
         }
     }
+}
+
+/// JSON Schema of a spec's file.
+pub fn schema() -> serde_json::Value {
+    schemars::SchemaGenerator::default()
+        .into_root_schema_for::<file::SpecFile>()
+        .to_value()
 }

@@ -201,12 +201,23 @@ impl Number {
         let value: f64 = format!("{}e{power}", self.digits)
             .parse()
             .map_err(|_| Fault::NotFinite)?;
-        let value = if unit.celsius { value + 273.15 } else { value };
+        let value = if unit.celsius { kelvin(value) } else { value };
         if value.is_finite() {
             Ok(value)
         } else {
             Err(Fault::NotFinite)
         }
+    }
+}
+
+/// Degrees Celsius in kelvin. The sum of the two decimals, not of their binary neighbours: -40 degC
+/// is the double nearest to 233.15.
+fn kelvin(celsius: f64) -> f64 {
+    let micro = (celsius * 1e6).round();
+    if micro / 1e6 == celsius {
+        (micro + 273.15e6) / 1e6
+    } else {
+        celsius + 273.15
     }
 }
 

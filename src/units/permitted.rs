@@ -14,6 +14,8 @@ pub struct Permitted {
     pub most: &'static str,
     /// A value that people would write, or a range where the quantity is always a range.
     pub example: &'static str,
+    /// What to remember when a value lies outside the range; may be empty.
+    pub note: &'static str,
 }
 
 /// What can be wrong with the text of a quantity.
@@ -145,6 +147,7 @@ impl Permitted {
             least,
             most,
             example,
+            note,
         } = self;
         let found = found.trim();
         let write = format!("write it like {example}");
@@ -167,31 +170,33 @@ impl Permitted {
                 (format!("the {name} has the unknown unit {unit}"), hints)
             }
             Fault::WrongUnit { unit, found } => {
-                let wanted = self
-                    .dimension()
-                    .name()
-                    .map_or_else(|| "another unit".to_owned(), |wanted| wanted.to_owned());
                 let given = found
                     .name()
                     .map_or_else(String::new, |given| format!(", {given}"));
-                let message = if unit.is_empty() {
-                    format!("the {name} has no unit")
-                } else if wanted == "a bare number" {
-                    format!(
-                        "the {name} is a bare number but has the unit {}",
-                        quote(unit)
-                    )
-                } else {
-                    format!("the {name} must be {wanted}, found {}{given}", quote(unit))
+                let message = match self.dimension().name() {
+                    _ if unit.is_empty() => format!("the {name} has no unit"),
+                    Some("a bare number") => {
+                        format!(
+                            "the {name} is a bare number but has the unit {}",
+                            quote(unit)
+                        )
+                    }
+                    Some(wanted) => {
+                        format!("the {name} must be {wanted}, found {}{given}", quote(unit))
+                    }
+                    None => format!("the {name} has the wrong unit {}{given}", quote(unit)),
                 };
                 (message, vec![write])
             }
             Fault::OutOfRange => (
                 format!("the {name} must lie between {least} and {most}"),
-                prefix_hint(found).into_iter().collect(),
+                prefix_hint(found)
+                    .into_iter()
+                    .chain((!note.is_empty()).then(|| (*note).to_owned()))
+                    .collect(),
             ),
             Fault::NotARange => (
-                format!("the {name} must be a range"),
+                format!("the {name} needs two values, found one"),
                 vec![range_hint(least, example)],
             ),
             Fault::NotASingle => (
@@ -210,7 +215,8 @@ impl Permitted {
     }
 }
 
-/// Units come from the file: no control characters, no endless text in a message.
+/// Units come from the file: no control characters, no endless text in a message. (`diag` has the
+/// same for its own row.)
 fn quote(text: &str) -> String {
     let short: String = text
         .chars()

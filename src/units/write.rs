@@ -57,13 +57,12 @@ pub fn percent(fraction: f64, digits: usize) -> String {
 }
 
 fn celsius(kelvin: f64, write: impl Fn(f64) -> String) -> String {
-    let degrees = kelvin - 273.15;
-    // Back to the decimal that was meant: 300.15 - 273.15 is not 27 in binary.
-    let rounded = (degrees * 1e6).round() / 1e6;
-    let text = write(if rounded + 273.15 == kelvin {
-        rounded
+    // The difference of the two decimals: 300.15 - 273.15 is not 27 in binary.
+    let micro = (kelvin * 1e6).round();
+    let text = write(if micro / 1e6 == kelvin {
+        (micro - 273.15e6) / 1e6
     } else {
-        degrees
+        kelvin - 273.15
     });
     format!("{} degC", if text == "-0" { "0" } else { &text })
 }

@@ -16,10 +16,11 @@ pub trait Measure {
     const PERMITTED: Permitted;
 }
 
-/// Defines measures: `Name: Type = "name in a sentence", "least" to "most", like "example";`.
+/// Defines measures: `Name: Type = "name in a sentence", "least" to "most", like "example";`, and
+/// before the semicolon, where it helps, `, note "what to remember outside the range"`.
 macro_rules! quantities {
     ($( $(#[$doc:meta])+ $name:ident: $type:ty = $called:literal,
-        $least:literal to $most:literal, like $example:literal; )+) => {
+        $least:literal to $most:literal, like $example:literal $(, note $note:literal)?; )+) => {
         $(
             $(#[$doc])+
             #[derive(Debug, Clone, Copy, PartialEq)]
@@ -32,6 +33,7 @@ macro_rules! quantities {
                     least: $least,
                     most: $most,
                     example: $example,
+                    note: concat!($($note)?),
                 };
             }
         )+
@@ -42,6 +44,9 @@ macro_rules! quantities {
     };
 }
 pub(crate) use quantities;
+
+/// Loose: a word, or the 1/V of a reciprocal; the reader knows units, an editor need not.
+const UNIT_PATTERN: &str = r"\s*([^\d\s.,]|1/).*";
 
 const NUMBER_PATTERN: &str = r"[+\-\u2212]?(\d+\.?\d*|\.\d+)([eE][+\-]?\d+)?";
 
@@ -94,13 +99,13 @@ impl<M: Measure> JsonSchema for Quantity<M> {
         if permitted.example.parse::<f64>().is_ok() {
             return json_schema!({ "type": "number", "minimum": least, "maximum": most });
         }
-        let kinds: &[&str] = match permitted.dimension() {
-            Dimension::NUMBER => &["string", "number"],
-            _ => &["string"],
+        let kinds = match permitted.dimension() {
+            Dimension::NUMBER => serde_json::json!(["string", "number"]),
+            _ => "string".into(),
         };
         json_schema!({
             "type": kinds,
-            "pattern": format!(r"^\s*{NUMBER_PATTERN}\s*[^\d\s.,].*$"),
+            "pattern": format!(r"^\s*{NUMBER_PATTERN}{UNIT_PATTERN}$"),
             "examples": [permitted.example],
             "$comment": format!("{} to {}", permitted.least, permitted.most),
         })
@@ -164,7 +169,7 @@ impl<M: Measure> Read for Fixable<M> {
 }
 
 fn range_schema(permitted: Permitted, single: bool) -> Schema {
-    let unit = r"\s*[^\d\s.,].*";
+    let unit = UNIT_PATTERN;
     let pattern = if single {
         format!(r"^\s*({NUMBER_PATTERN}.* to )?\s*{NUMBER_PATTERN}{unit}$")
     } else {

@@ -115,12 +115,20 @@ impl Source {
         }
         .deserialize(first)
         .map_err(|error| {
-            let (message, hint) = if walk.borrow().count > MOST_NODES {
-                ("the file unfolds into too many entries".to_owned(), None)
-            } else {
-                words(&error.to_string())
+            let problem = error.to_string();
+            if walk.borrow().count > MOST_NODES {
+                return self.refuse(None, "the file unfolds into too many entries", None);
+            }
+            let offset = error.location().map(|location| location.index());
+            let (message, hint, from) = words(&problem);
+            let offset = match from {
+                Shown::Problem => offset,
+                Shown::Opening => self.opening(&problem).or(offset),
+                Shown::Control => self
+                    .text
+                    .find(|c: char| c.is_control() && !"\n\r\t".contains(c)),
             };
-            self.refuse(error.location().map(|l| l.index()), &message, hint)
+            self.refuse(offset, &message, hint)
         })?;
         if documents.next().is_some() {
             return Err(self.refuse(
@@ -128,6 +136,9 @@ impl Source {
                 "the file holds more than one document",
                 Some("keep one document per file: no second --- line"),
             ));
+        }
+        if root.value == Value::Null {
+            return Err(self.refuse(None, "the file is empty", None));
         }
         Ok(root)
     }
@@ -147,6 +158,24 @@ impl Source {
             }),
         });
         diagnostics
+    }
+
+    /// Byte offset of the construct that the parser was in when it failed: its messages end in
+    /// `, while scanning a quoted scalar at line 2 column 8`.
+    fn opening(&self, problem: &str) -> Option<usize> {
+        let (_, context) = problem.split_once(", while ")?;
+        let mut words = context.rsplit(' ');
+        let column: usize = words.next()?.parse().ok()?;
+        let line: usize = words.nth(1)?.parse().ok()?;
+        let text = self.text.split_inclusive('\n').nth(line.checked_sub(1)?)?;
+        let start: usize = self
+            .text
+            .split_inclusive('\n')
+            .take(line - 1)
+            .map(str::len)
+            .sum();
+        let before = text.chars().take(column.checked_sub(1)?);
+        Some(start + before.map(char::len_utf8).sum::<usize>())
     }
 
     /// Start of the line that begins a second document: the first marker after any content.
@@ -232,6 +261,10 @@ fn token_length(rest: &str, text: Option<&str>) -> usize {
     }
     match text {
         Some(text) if !text.is_empty() && line.starts_with(text) => text.chars().count(),
+        _ if line.starts_with(['[', '{']) => {
+            let close = if line.starts_with('[') { ']' } else { '}' };
+            line.chars().position(|c| c == close).map_or(1, |at| at + 1)
+        }
         _ => {
             let end = line
                 .find([' ', '\t', ',', ']', '}', ':'])
@@ -241,46 +274,82 @@ fn token_length(rest: &str, text: Option<&str>) -> usize {
     }
 }
 
-/// The parser's complaint in our words, and what would help.
-fn words(problem: &str) -> (String, Option<&'static str>) {
+/// Which place a complaint of the parser is shown at.
+enum Shown {
+    /// Where the parser gave up.
+    Problem,
+    /// Where the construct it gave up in begins.
+    Opening,
+    /// The first control character: the parser does not say where it is.
+    Control,
+}
+
+/// The parser's complaint in our words, what would help, and where to show it.
+fn words(problem: &str) -> (String, Option<&'static str>, Shown) {
     let plain = problem.split(" at line ").next().unwrap_or(problem);
     let plain = plain.split(" at position ").next().unwrap_or(plain);
-    let (message, hint) = match plain {
+    let plain = plain.split(", while ").next().unwrap_or(plain);
+    let (message, hint, shown) = match plain {
         "mapping values are not allowed in this context" => (
-            "a second \": \" in one line",
-            Some("start a new line for a new key, or put text that holds \": \" in quotes"),
+            "a \": \" does not fit here",
+            "keys of one table start in the same column; text that holds \": \" needs quotes",
+            Shown::Problem,
+        ),
+        "found a tab character that violates indentation" => (
+            "a tab in the indentation",
+            "indent with spaces",
+            Shown::Problem,
         ),
         "did not find expected key" => (
-            "this line does not fit the lines above it",
-            Some("keys of one table start in the same column; text with odd signs needs quotes"),
+            "this does not fit what stands above it",
+            "keys of one table start in the same column; text with odd signs needs quotes",
+            Shown::Problem,
         ),
         "did not find expected '-' indicator" => (
             "this line does not fit the list above it",
-            Some("items of one list start with \"- \" in the same column"),
+            "items of one list start with \"- \" in the same column",
+            Shown::Problem,
         ),
         "did not find expected ',' or ']'" => (
-            "the list in brackets is not closed",
-            Some("write it like [TT, SS, FF]"),
+            "this list in brackets is not closed",
+            "write it like [TT, SS, FF]",
+            Shown::Opening,
         ),
         "did not find expected ',' or '}'" => (
-            "the table in braces is not closed",
-            Some("write it like {limit: 1 %, of: ratio}"),
+            "this table in braces is not closed",
+            "write it like {limit: 1 %, of: ratio}",
+            Shown::Opening,
         ),
         "found character that cannot start any token" => (
             "a value cannot start with this sign",
-            Some("indent with spaces, never tabs; put text that starts with @ or ` in quotes"),
+            "indent with spaces, never tabs; put text that starts with @ or ` in quotes",
+            Shown::Problem,
         ),
         "could not find expected ':'" => (
             "this line has no \": \" after its key",
-            Some("write it like key: value"),
+            "write it like key: value",
+            Shown::Opening,
         ),
-        "found unexpected end of stream" => ("the quotes opened here are not closed", None),
-        "unknown anchor" => ("this alias has no anchor above it", None),
-        "recursion limit exceeded" => ("the nesting is too deep", None),
-        "repetition limit exceeded" => ("the file unfolds into too many entries", None),
-        other => return (format!("this is not YAML: {other}"), None),
+        "found unexpected end of stream" => {
+            ("the quotes opened here are not closed", "", Shown::Opening)
+        }
+        "control characters are not allowed" => (
+            "a control character, which YAML does not allow",
+            "",
+            Shown::Control,
+        ),
+        "unknown anchor" => ("this alias has no anchor above it", "", Shown::Problem),
+        "recursion limit exceeded" => ("the nesting is too deep", "", Shown::Problem),
+        "repetition limit exceeded" => {
+            ("the file unfolds into too many entries", "", Shown::Problem)
+        }
+        other => return (format!("this is not YAML: {other}"), None, Shown::Problem),
     };
-    (message.to_owned(), hint)
+    (
+        message.to_owned(),
+        (!hint.is_empty()).then_some(hint),
+        shown,
+    )
 }
 
 /// State shared by all seeds of one walk over a document.
@@ -343,6 +412,11 @@ impl<'de> Visitor<'de> for Seed<'_> {
     }
 
     fn visit_unit<E: Error>(self) -> Result<Node, E> {
+        self.leaf(Value::Null)
+    }
+
+    /// How the parser presents a document without content.
+    fn visit_none<E: Error>(self) -> Result<Node, E> {
         self.leaf(Value::Null)
     }
 

@@ -44,6 +44,14 @@ struct Pending {
     hints: Vec<String>,
 }
 
+/// The values of a table, one slot for each of its entries.
+pub struct Slots<'n> {
+    /// The value's node, if the key is there.
+    pub values: Vec<Option<&'n Node>>,
+    /// Whether the key is there, be it with a faulty value or misspelt.
+    pub seen: Vec<bool>,
+}
+
 /// Collects faults of one file.
 pub struct Reader<'a> {
     source: &'a Source,
@@ -132,9 +140,9 @@ impl<'a> Reader<'a> {
         node: &'n Node,
         what: &str,
         entries: &[Entry],
-    ) -> Option<Vec<Option<&'n Node>>> {
+    ) -> Option<Slots<'n>> {
         let Value::Map(pairs) = &node.value else {
-            self.wrong_type(node, what);
+            self.wrong_type(node, &format!("a table of keys for {what}"));
             return None;
         };
         let mut slots: Vec<Option<(&Node, &Node)>> = vec![None; entries.len()];
@@ -142,16 +150,8 @@ impl<'a> Reader<'a> {
         let mut meant = vec![false; entries.len()];
         for (key, value) in pairs {
             let Value::Text(word) = &key.value else {
-                let id = if matches!(key.value, Value::Null) {
-                    node.owner
-                } else {
-                    key.id
-                };
-                self.fault(
-                    id,
-                    format!("expected a key, found {}", key.value.kind()),
-                    vec![],
-                );
+                let message = format!("expected a key, found {}", key.value.kind());
+                self.fault(key.id, message, vec![]);
                 continue;
             };
             match entries.iter().position(|entry| entry.key == word) {
@@ -186,17 +186,22 @@ impl<'a> Reader<'a> {
             if entry.required && slots[at].is_none() && !meant[at] {
                 self.fault(
                     node.owner,
-                    format!("the key \"{}\" is missing in {what}", entry.key),
+                    format!("{what} needs the key \"{}\"", entry.key),
                     vec![],
                 );
             }
         }
-        Some(
-            slots
+        Some(Slots {
+            seen: slots
+                .iter()
+                .zip(meant)
+                .map(|(slot, meant)| slot.is_some() || meant)
+                .collect(),
+            values: slots
                 .into_iter()
                 .map(|slot| slot.map(|(_, value)| value))
                 .collect(),
-        )
+        })
     }
 
     /// Reads the value of a slot.

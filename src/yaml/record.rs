@@ -16,6 +16,8 @@ macro_rules! record {
             $( $(#[doc = $field_doc])+ pub $field: Option<$crate::yaml::At<$type>>, )+
             /// The node to blame for what is missing.
             pub owner: u32,
+            /// Keys that stand in the file, readable or not.
+            seen: Vec<&'static str>,
         }
 
         impl $name {
@@ -26,6 +28,12 @@ macro_rules! record {
                     required: $crate::yaml::record!(@required $need),
                 }, )+
             ];
+
+            /// Whether a key stands in the file, even with a faulty value.
+            #[allow(dead_code, reason = "only records with either-or keys need it")]
+            pub fn has_key(&self, key: &str) -> bool {
+                self.seen.contains(&key)
+            }
         }
 
         impl $crate::yaml::Read for $name {
@@ -34,10 +42,16 @@ macro_rules! record {
                 reader: &mut $crate::yaml::Reader<'_>,
             ) -> Option<Self> {
                 let slots = reader.slots(node, $what, Self::ENTRIES)?;
-                let mut slots = slots.into_iter();
+                let seen = Self::ENTRIES
+                    .iter()
+                    .zip(slots.seen)
+                    .filter_map(|(entry, seen)| seen.then_some(entry.key))
+                    .collect();
+                let mut slots = slots.values.into_iter();
                 Some($name {
                     $( $field: reader.field(slots.next().flatten()), )+
                     owner: node.owner,
+                    seen,
                 })
             }
         }

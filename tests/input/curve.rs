@@ -6,7 +6,7 @@ use proptest::prelude::*;
 
 /// Rising lengths between 0.1 um and 100 um with arbitrary values.
 fn tables() -> impl Strategy<Value = Curve> {
-    prop::collection::vec((0.05f64..1.5, -10.0f64..10.0), 2..9).prop_map(|rows| {
+    prop::collection::vec((0.3f64..1.5, -10.0f64..10.0), 2..9).prop_map(|rows| {
         let mut log_length = (0.1e-6f64).ln();
         let mut curve = Curve {
             lengths: vec![],
