@@ -3,6 +3,7 @@
 pub mod assembly;
 pub mod cells;
 pub mod circuit;
+pub mod cli;
 pub mod device;
 pub mod diag;
 pub mod explore;
