@@ -1,4 +1,5 @@
 //! All integration tests, one module per part of the program.
 
 mod input;
+mod physics;
 mod report;

@@ -7,6 +7,7 @@ use crate::cells::{CELLS, Size};
 use crate::device;
 use crate::network::Job;
 use crate::network::bench::of;
+use crate::network::probes::Probes;
 use crate::process::AreaRule;
 use crate::spec::{AccuracyOf, Output, Rail, Reference};
 
@@ -105,7 +106,7 @@ pub fn wants(job: &Job, tighten: f64) -> Vec<Want> {
 
 impl Candidate {
     /// Digests a solved shape.
-    pub fn new(job: &Job, rail: Rail, index: usize, solved: &Solved, probes: &[f64]) -> Candidate {
+    pub fn new(job: &Job, rail: Rail, index: usize, solved: &Solved, probes: &Probes) -> Candidate {
         let tech = job.tech(rail);
         let mosfet = tech.mosfet();
         let loss = device::width_loss(mosfet);
@@ -115,10 +116,7 @@ impl Candidate {
             length: s.length,
         };
         let parts = CELLS[solved.shape.cell].parts();
-        let at = |volts: f64| {
-            let k = probes.iter().position(|&v| v == volts);
-            &solved.probes[k.expect("every output's range is probed")]
-        };
+        let at = |volts: f64| &solved.probes[probes.index(volts)];
         let outputs = job
             .spec
             .outputs
@@ -145,9 +143,9 @@ impl Candidate {
             bias_voltage: solved.bias,
             outputs,
             ladder: probes
+                .ladder
                 .iter()
-                .copied()
-                .zip(solved.probes.iter().copied())
+                .map(|&k| (probes.volts[k], solved.probes[k]))
                 .collect(),
         }
     }

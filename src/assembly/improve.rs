@@ -8,7 +8,7 @@
 //! optima.
 
 use super::candidates::Candidate;
-use super::plan::{Ledger, Member, Plan, Price};
+use super::plan::{Clerk, Ledger, Member, Plan, Price, Tally};
 use rand::Rng;
 use rand_pcg::Pcg64Mcg;
 
@@ -43,8 +43,10 @@ pub struct Search<'s, 'a> {
     menu: &'s Menu,
     /// Area charged for an excess of one limit by its own size, m^2.
     charge: f64,
-    /// Plans priced so far.
-    pub priced: u64,
+    clerk: Clerk<'s, 'a>,
+    /// Of the plan that changes are tried on.
+    base: Tally,
+    scratch: Tally,
 }
 
 impl<'s, 'a> Search<'s, 'a> {
@@ -54,7 +56,9 @@ impl<'s, 'a> Search<'s, 'a> {
             ledger,
             menu,
             charge,
-            priced: 0,
+            clerk: Clerk::new(ledger),
+            base: Tally::new(),
+            scratch: Tally::new(),
         }
     }
 
@@ -64,12 +68,25 @@ impl<'s, 'a> Search<'s, 'a> {
         Scored { plan, price, score }
     }
 
+    /// Plans priced so far.
+    pub fn priced(&self) -> u64 {
+        self.clerk.priced
+    }
+
     fn value(&mut self, plan: &Plan) -> (Price, f64) {
-        self.priced += 1;
-        let price = self.ledger.price(plan);
+        let price = self.clerk.price(plan, &mut self.scratch);
+        (price, self.charged(&price))
+    }
+
+    fn charged(&self, price: &Price) -> f64 {
         // Any excess at all costs something, so that feasible beats nearly feasible.
         let step = if price.excess > 0.0 { 0.02 } else { 0.0 };
-        (price, price.area + self.charge * (price.excess + step))
+        price.area + self.charge * (price.excess + step)
+    }
+
+    /// Makes `plan` the one that changes are tried on.
+    fn rebase(&mut self, plan: &Plan) {
+        self.clerk.price(plan, &mut self.base);
     }
 
     /// A first plan: one family on the reference's rail, one on the other where outputs need it.
@@ -162,28 +179,31 @@ impl<'s, 'a> Search<'s, 'a> {
         best
     }
 
-    /// Keeps a changed plan if it is cheaper.
-    fn offer(&mut self, best: &mut Scored, plan: &Plan) -> bool {
-        let (price, score) = self.value(plan);
+    /// Keeps a plan if it is cheaper. It differs from the base plan in family `touched` alone.
+    fn offer(&mut self, best: &mut Scored, plan: &Plan, touched: usize) -> bool {
+        let price = self
+            .clerk
+            .reprice(plan, &self.base, &mut self.scratch, touched);
+        let score = self.charged(&price);
         let better = score < best.score * (1.0 - 1e-9);
         if better {
-            *best = Scored {
-                plan: plan.clone(),
-                price,
-                score,
-            };
+            best.plan.clone_from(plan);
+            best.price = price;
+            best.score = score;
+            std::mem::swap(&mut self.base, &mut self.scratch);
         }
         better
     }
 
     /// Best shape, current and units of one family, the rest as it is.
     fn reshape(&mut self, best: &mut Scored, f: usize) {
+        self.rebase(&best.plan);
         let rail = best.plan.members[f].rail as usize;
         let mut plan = best.plan.clone();
         // Units and currents with the present shape first: few and often enough.
         for &units in &UNITS {
             plan.members[f].units = units;
-            self.offer(best, &plan);
+            self.offer(best, &plan, f);
         }
         plan.clone_from(&best.plan);
         if plan.members[f].parent.is_some() {
@@ -191,7 +211,7 @@ impl<'s, 'a> Search<'s, 'a> {
                 for &units in &UNITS {
                     plan.members[f].current = current;
                     plan.members[f].units = units;
-                    self.offer(best, &plan);
+                    self.offer(best, &plan, f);
                 }
             }
         }
@@ -201,12 +221,12 @@ impl<'s, 'a> Search<'s, 'a> {
             if !self.place(&mut plan, f, candidate) {
                 continue;
             }
-            self.offer(best, &plan);
+            self.offer(best, &plan, f);
         }
         plan.clone_from(&best.plan);
         for &units in &UNITS {
             plan.members[f].units = units;
-            self.offer(best, &plan);
+            self.offer(best, &plan, f);
         }
     }
 
@@ -234,12 +254,13 @@ impl<'s, 'a> Search<'s, 'a> {
     }
 
     fn move_outputs(&mut self, best: &mut Scored) {
+        self.rebase(&best.plan);
         for k in 0..best.plan.legs.len() {
             let mut plan = best.plan.clone();
             for f in 0..plan.members.len() {
                 if plan.members[f].rail == self.ledger.wants[k].rail {
                     plan.legs[k] = f;
-                    self.offer(best, &plan);
+                    self.offer(best, &plan, f);
                 }
             }
         }
@@ -247,6 +268,7 @@ impl<'s, 'a> Search<'s, 'a> {
 
     /// Other parents and bias feeds for every family.
     fn reparent(&mut self, best: &mut Scored) {
+        self.rebase(&best.plan);
         for f in 1..best.plan.members.len() {
             let mut plan = best.plan.clone();
             let rail = plan.members[f].rail;
@@ -256,7 +278,7 @@ impl<'s, 'a> Search<'s, 'a> {
                 }
                 if plan.members[f].parent.is_some() {
                     plan.members[f].parent = Some(p);
-                    self.offer(best, &plan);
+                    self.offer(best, &plan, f);
                 }
             }
             plan.clone_from(&best.plan);
@@ -267,7 +289,7 @@ impl<'s, 'a> Search<'s, 'a> {
                     }
                     for &current in &self.menu.currents {
                         plan.members[f].bias = Some((current, Some(p)));
-                        self.offer(best, &plan);
+                        self.offer(best, &plan, f);
                     }
                 }
             }
@@ -294,6 +316,11 @@ impl<'s, 'a> Search<'s, 'a> {
                 parent: None,
                 bias: None,
             });
+            let Some(&first) = parents.first() else {
+                continue;
+            };
+            plan.members[f].parent = Some(first);
+            self.rebase(&plan);
             for &p in &parents {
                 for &current in &menu.currents {
                     for &candidate in &menu.own[k] {
@@ -310,7 +337,7 @@ impl<'s, 'a> Search<'s, 'a> {
                             continue;
                         };
                         member.units = units;
-                        self.offer(best, &plan);
+                        self.offer(best, &plan, f);
                     }
                 }
             }

@@ -2,6 +2,7 @@
 //! way (column generation), which of them to build (MILP), and whether a change of one family
 //! makes the whole cheaper.
 
+pub mod build;
 pub mod candidates;
 pub mod columns;
 pub mod improve;

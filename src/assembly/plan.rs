@@ -1,9 +1,24 @@
 //! A network on paper: families as pool shapes with unit counts, priced and checked by adding up
-//! what solved shapes said. No circuit is solved here; what passes is solved as a whole later.
+//! what solved shapes said, climate by climate. No circuit is solved here; what passes is solved
+//! as a whole later.
+//!
+//! Along a path from the reference, relative errors of copies add up to first order and their
+//! variances add up, leg by leg. A feeder's copy is read off its shape's ladder at the voltage
+//! its child leaves it, at both ends of the supply.
 
-use super::candidates::{Candidate, End, Want};
+use super::candidates::{Candidate, Want};
+use crate::cells::solved::Mirrored;
 use crate::network::Job;
+use crate::network::probes::Pool;
+use crate::numeric::dispatch::{Work, widest};
+use crate::numeric::lanes::Lanes;
 use crate::spec::{Rail, Reference};
+use std::collections::HashMap;
+
+/// Groups of eight climates a plan can hold: five corners at three temperatures need two.
+const GROUPS: usize = 4;
+/// Feeder pairs kept before the memory starts afresh.
+const KEPT: usize = 1 << 16;
 
 /// A family of a plan.
 #[derive(Debug, Clone, PartialEq)]
@@ -49,26 +64,85 @@ pub struct Price {
 pub struct Ledger<'a> {
     /// The job.
     pub job: Job<'a>,
+    /// The pool.
+    pub pool: &'a Pool,
     /// Candidates of both rails.
     pub candidates: &'a [Vec<Candidate>; 2],
     /// Outputs.
     pub wants: Vec<Want>,
+    /// Probes of the low and the high end of each output's range.
+    ends: Vec<[usize; 2]>,
     /// Largest overhead current, A.
     pub budget: f64,
     /// Least and largest voltage the reference pin may have, from the root's rail.
     pub pin: [f64; 2],
     /// Copies of the reference.
     pub copies: usize,
+    /// Factors on a resistor at every climate, for a reference the network makes itself.
+    resistor: Vec<Lanes>,
 }
 
-/// State of a gate line: what has been collected up to the input of its family.
-#[derive(Debug, Clone, Copy, Default)]
+/// What has been collected up to the input of a family, per group of climates.
+#[derive(Debug, Clone, Copy)]
 struct Line {
-    variance: f64,
-    error: [f64; 2],
+    variance: [Lanes; GROUPS],
+    /// Systematic error at the lowest and at the highest supply.
+    error: [[Lanes; GROUPS]; 2],
+}
+
+const START: Line = Line {
+    variance: [Lanes::ZERO; GROUPS],
+    error: [[Lanes::ZERO; GROUPS]; 2],
+};
+
+/// A feeder into a certain child: error at both supplies, variances at the lower one.
+#[derive(Debug, Clone, Copy)]
+struct FeederEnd {
+    error: [[Lanes; GROUPS]; 2],
+    variance_in: [Lanes; GROUPS],
+    variance_out: [Lanes; GROUPS],
+    worst: f64,
+}
+
+/// A priced plan, part by part, so that a change can be priced from what it touches.
+#[derive(Debug, Clone)]
+pub struct Tally {
+    lines: Vec<Line>,
+    families: Vec<Share>,
+    outputs: Vec<Share>,
+    absolute: [[Lanes; GROUPS]; 2],
+}
+
+/// What one family or one output adds to the price.
+#[derive(Debug, Clone, Copy, Default)]
+struct Share {
+    area: f64,
+    overhead: f64,
+    excess: f64,
+    error_share: f64,
+    references: usize,
+}
+
+impl Tally {
+    /// An empty tally, to be filled by [`Clerk::price`].
+    pub fn new() -> Tally {
+        Tally {
+            lines: Vec::new(),
+            families: Vec::new(),
+            outputs: Vec::new(),
+            absolute: [[Lanes::ZERO; GROUPS]; 2],
+        }
+    }
+}
+
+impl Default for Tally {
+    fn default() -> Self {
+        Tally::new()
+    }
 }
 
 /// Units of a leg of `current` in a family, and the relative error of rounding.
+#[inline(always)]
 pub fn units_for(current: f64, unit: f64) -> (u32, f64) {
     let units = (current / unit).round().max(1.0);
     (units as u32, units * unit / current - 1.0)
@@ -78,6 +152,7 @@ impl<'a> Ledger<'a> {
     /// A ledger for a job with candidates; `tighten` scales accuracy limits.
     pub fn new(
         job: Job<'a>,
+        pool: &'a Pool,
         candidates: &'a [Vec<Candidate>; 2],
         tighten: f64,
         budget: f64,
@@ -96,168 +171,387 @@ impl<'a> Ledger<'a> {
             Reference::Resistor { .. } => ([0.0, 0.9 * supply.least.0], 1),
         };
         let wants = super::candidates::wants(&job, tighten);
+        let ends = job
+            .spec
+            .outputs
+            .iter()
+            .map(|o| {
+                let probes = &pool.probes[o.rail as usize];
+                [probes.index(o.range.least.0), probes.index(o.range.most.0)]
+            })
+            .collect();
+        let tech = job.tech(Rail::Sink);
+        let climates = crate::network::corners::climates(&job);
+        let resistor = climates
+            .chunks(8)
+            .map(|chunk| {
+                Lanes::from_fn(|i| {
+                    let climate = &chunk[i.min(chunk.len() - 1)];
+                    crate::cells::solved::resistor_factor(&tech, climate)
+                })
+            })
+            .collect();
         Ledger {
             job,
+            pool,
             candidates,
             wants,
+            ends,
             budget,
             pin,
             copies,
+            resistor,
         }
     }
 
     /// The candidate of a member.
+    #[inline(always)]
     pub fn candidate(&self, member: &Member) -> &'a Candidate {
         &self.candidates[member.rail as usize][member.candidate]
     }
 
-    /// Voltage range across a feeder into an input of `input` volts.
-    pub fn feeder_volts(&self, input: [f64; 2]) -> [f64; 2] {
-        let supply = self.job.spec.supply;
-        [supply.least.0 - input[1], supply.most.0 - input[0]]
-    }
-
-    /// Prices a plan.
-    pub fn price(&self, plan: &Plan) -> Price {
-        let mut area = 0.0;
-        let mut overhead = 0.0;
-        let mut excess = 0.0;
-        let mut copies = 0;
-        let mut lines: Vec<Line> = Vec::with_capacity(plan.members.len());
-        let mut absolute = [0.0; 2];
-        for member in &plan.members {
-            let c = self.candidate(member);
-            let unit = member.current / f64::from(member.units);
-            let bias = member.bias.map_or(0.0, |b| b.0);
-            area += c.input_area(unit, f64::from(member.units), bias);
-            if !c.drawable(unit, member.units) {
-                excess += 1.0;
-            }
-            let mut line = Line::default();
-            let feeds = [
-                Some((member.parent, member.current, c.input)),
-                member
-                    .bias
-                    .map(|(i, p)| (p, i, c.bias_voltage.unwrap_or_default())),
-            ];
-            for (which, feed) in feeds.into_iter().enumerate() {
-                let Some((parent, current, input)) = feed else {
-                    continue;
-                };
-                overhead += current;
-                let Some(parent) = parent else {
-                    copies += 1;
-                    excess += outside(input, self.pin);
-                    if let Reference::Resistor { .. } = self.job.spec.reference {
-                        let (ohms, a) = self.own_reference(current, c);
-                        absolute = a;
-                        if let Some(card) = &self.job.card.resistor {
-                            area += crate::device::resistor_area(card, card.width, ohms, 1);
-                        }
-                    }
-                    continue;
-                };
-                let from = &plan.members[parent];
-                let by = self.candidate(from);
-                let from_unit = from.current / f64::from(from.units);
-                let (units, rounding) = units_for(current, from_unit);
-                area += by.leg_area(from_unit, f64::from(units));
-                let Some(end) = by.feeder(self.feeder_volts(input)) else {
-                    excess += 1.0;
-                    continue;
-                };
-                if which == 0 {
-                    let up = &lines[parent];
-                    line = Line {
-                        variance: up.variance
-                            + end.variance_in / from.current
-                            + end.variance_out / current,
-                        error: [
-                            up.error[0] + end.error[0] + rounding,
-                            up.error[1] + end.error[1] + rounding,
-                        ],
-                    };
-                } else {
-                    // A bias leg only has to be there: a tenth off moves its gate by little.
-                    let off = end.error[0].abs().max(end.error[1].abs()) + rounding.abs();
-                    excess += (off - 0.1).max(0.0);
-                }
-            }
-            lines.push(line);
-        }
-        let mut error_share: f64 = 0.0;
-        for (k, (&leg, want)) in plan.legs.iter().zip(&self.wants).enumerate() {
-            let member = &plan.members[leg];
-            let c = self.candidate(member);
-            let unit = member.current / f64::from(member.units);
-            let (units, rounding) = units_for(want.current, unit);
-            area += want.count * c.leg_area(unit, f64::from(units));
-            let Some(ends) = &c.outputs[k] else {
-                excess += 1.0;
-                continue;
-            };
-            let line = &lines[leg];
-            let mut start = line.error;
-            if want.absolute {
-                start = [start[0] + absolute[0], start[1] + absolute[1]];
-            }
-            let error = worst(ends, line.variance, start, rounding, member.current, want);
-            let share = error / want.limit;
-            error_share = error_share.max(share);
-            excess += (share - 1.0).max(0.0);
-        }
-        excess += copies.max(self.copies) as f64 - self.copies as f64;
-        excess += (overhead / self.budget - 1.0 - 1e-9).max(0.0);
-        Price {
-            area,
-            overhead,
-            excess,
-            error_share,
-        }
+    fn groups(&self) -> usize {
+        self.resistor.len().min(GROUPS)
     }
 
     /// The resistor that makes `current` at the nominal corner, and the reference's relative error
-    /// over corners.
-    fn own_reference(&self, current: f64, root: &Candidate) -> (f64, [f64; 2]) {
+    /// at every climate at both ends of the supply.
+    fn own_reference(&self, current: f64, root: &Candidate) -> (f64, [[Lanes; GROUPS]; 2]) {
         let supply = self.job.spec.supply;
         let middle = (supply.least.0 + supply.most.0) / 2.0;
-        let input = (root.input[0] + root.input[1]) / 2.0;
-        let ohms = (middle - input).max(0.05) / current;
-        let tech = self.job.tech(Rail::Sink);
-        let factors: Vec<f64> = crate::network::corners::climates(&self.job)
+        let solved = &self.pool.shapes[root.rail as usize][root.index];
+        // Climates list the nominal process first, its temperatures rising.
+        let temperatures = crate::network::corners::temperatures(&self.job);
+        let nominal = temperatures
             .iter()
-            .map(|c| crate::cells::solved::resistor_factor(&tech, c))
-            .collect();
-        let most = factors.iter().copied().fold(f64::MIN, f64::max);
-        let least = factors.iter().copied().fold(f64::MAX, f64::min);
-        let low = (supply.least.0 - root.input[1]) / (ohms * most) / current - 1.0;
-        let high = (supply.most.0 - root.input[0]) / (ohms * least) / current - 1.0;
-        (ohms, [low, high])
+            .position(|&t| t == self.job.spec.temperature.nominal.0)
+            .unwrap_or(0);
+        let input = solved.input_lanes[0].0[nominal];
+        let ohms = (middle - input).max(0.05) / current;
+        let mut error = [[Lanes::ZERO; GROUPS]; 2];
+        for (end, volts) in [supply.least.0, supply.most.0].into_iter().enumerate() {
+            for g in 0..self.groups() {
+                error[end][g] =
+                    (volts - solved.input_lanes[g]) / (ohms * current * self.resistor[g]) - 1.0;
+            }
+        }
+        (ohms, error)
     }
 }
 
-/// Worst error of an output leg: systematic part and k sigma at the worse end of its range.
-#[inline]
-pub fn worst(
-    ends: &[End; 2],
-    variance: f64,
-    line: [f64; 2],
-    rounding: f64,
-    input_current: f64,
-    want: &Want,
-) -> f64 {
-    let mut out: f64 = 0.0;
-    for end in ends {
-        let low = line[0] + end.error[0] + rounding;
-        let high = line[1] + end.error[1] + rounding;
-        let sigma =
-            (variance + end.variance_in / input_current + end.variance_out / want.current).sqrt();
-        out = out.max(low.abs().max(high.abs()) + want.sigma * sigma);
-    }
-    out
+/// Prices plans, and remembers what every pair of feeder and child does.
+pub struct Clerk<'l, 'a> {
+    /// What plans are measured against.
+    pub ledger: &'l Ledger<'a>,
+    // Looked up by key only, never walked: its order cannot reach a result.
+    feeders: HashMap<(Rail, usize, usize, bool), FeederEnd>,
+    /// Plans priced so far.
+    pub priced: u64,
 }
 
-/// How far a range sticks out of another, as a share of a volt.
+impl<'l, 'a> Clerk<'l, 'a> {
+    /// A clerk for a ledger.
+    pub fn new(ledger: &'l Ledger<'a>) -> Clerk<'l, 'a> {
+        Clerk {
+            ledger,
+            feeders: HashMap::new(),
+            priced: 0,
+        }
+    }
+
+    /// Prices a plan from scratch.
+    pub fn price(&mut self, plan: &Plan, tally: &mut Tally) -> Price {
+        self.priced += 1;
+        self.remember(plan, None);
+        widest(Pricing {
+            clerk: self,
+            plan,
+            tally,
+            touched: None,
+        })
+    }
+
+    /// Prices a plan that differs from the one `base` was made for in family `touched` alone: its
+    /// shape, current, units, feeds, or which outputs it serves.
+    pub fn reprice(
+        &mut self,
+        plan: &Plan,
+        base: &Tally,
+        scratch: &mut Tally,
+        touched: usize,
+    ) -> Price {
+        self.priced += 1;
+        self.remember(plan, Some(touched));
+        scratch.lines.clone_from(&base.lines);
+        scratch.families.clone_from(&base.families);
+        scratch.outputs.clone_from(&base.outputs);
+        scratch.absolute = base.absolute;
+        widest(Pricing {
+            clerk: self,
+            plan,
+            tally: scratch,
+            touched: Some(touched),
+        })
+    }
+
+    /// Makes sure every feeder pair of the plan is known.
+    fn remember(&mut self, plan: &Plan, mut touched: Option<usize>) {
+        if self.feeders.len() > KEPT {
+            self.feeders.clear();
+            touched = None;
+        }
+        for (f, member) in plan.members.iter().enumerate() {
+            let feeds = [
+                (member.parent, false),
+                (member.bias.and_then(|b| b.1), true),
+            ];
+            for (parent, bias) in feeds {
+                let Some(parent) = parent else { continue };
+                if touched.is_some_and(|t| t != f && t != parent) {
+                    continue;
+                }
+                let from = &plan.members[parent];
+                let key = (from.rail, from.candidate, member.candidate, bias);
+                if !self.feeders.contains_key(&key) {
+                    let end = self.feeder(from, member, bias);
+                    self.feeders.insert(key, end);
+                }
+            }
+        }
+    }
+
+    /// The feeder of `child` made of `from`'s units.
+    fn feeder(&self, from: &Member, child: &Member, bias: bool) -> FeederEnd {
+        let ledger = self.ledger;
+        let by = ledger.candidate(from);
+        let solved = &ledger.pool.shapes[by.rail as usize][by.index];
+        let probes = &ledger.pool.probes[by.rail as usize];
+        let fed = ledger.candidate(child);
+        let below = &ledger.pool.shapes[fed.rail as usize][fed.index];
+        let input = if bias {
+            &below.bias_lanes
+        } else {
+            &below.input_lanes
+        };
+        let supply = ledger.job.spec.supply;
+        let zero = [Lanes::ZERO; GROUPS];
+        let mut out = FeederEnd {
+            error: [zero; 2],
+            variance_in: zero,
+            variance_out: zero,
+            worst: 0.0,
+        };
+        for g in 0..ledger.groups() {
+            for (end, volts) in [supply.least.0, supply.most.0].into_iter().enumerate() {
+                for i in 0..8 {
+                    let Some((rung, t)) = probes.rung(volts - input[g].0[i]) else {
+                        // Hardly any voltage left: as good as no current.
+                        out.error[end][g].0[i] = -1.0;
+                        out.worst = 1.0;
+                        continue;
+                    };
+                    let a: &Mirrored = &solved.at(probes.ladder[rung])[g];
+                    let b: &Mirrored = &solved.at(probes.ladder[rung + 1])[g];
+                    let mix = |x: &Lanes, y: &Lanes| x.0[i] + t * (y.0[i] - x.0[i]);
+                    let error = mix(&a.error, &b.error);
+                    out.error[end][g].0[i] = error;
+                    out.worst = out.worst.max(error.abs());
+                    if end == 0 {
+                        out.variance_in[g].0[i] = mix(&a.variance_in, &b.variance_in).max(0.0);
+                        out.variance_out[g].0[i] = mix(&a.variance_out, &b.variance_out).max(0.0);
+                    }
+                }
+            }
+        }
+        out
+    }
+}
+
+/// One pricing, compiled for the widest lanes.
+struct Pricing<'w, 'l, 'a> {
+    clerk: &'w Clerk<'l, 'a>,
+    plan: &'w Plan,
+    tally: &'w mut Tally,
+    touched: Option<usize>,
+}
+
+impl Work for Pricing<'_, '_, '_> {
+    type Answer = Price;
+
+    #[inline(always)]
+    fn run(self) -> Price {
+        let Pricing {
+            clerk,
+            plan,
+            tally,
+            touched,
+        } = self;
+        let ledger = clerk.ledger;
+        let groups = ledger.groups();
+        let n = plan.members.len();
+        if touched.is_none() {
+            tally.lines.clear();
+            tally.lines.resize(n, START);
+            tally.families.clear();
+            tally.families.resize(n, Share::default());
+            tally.outputs.clear();
+            tally.outputs.resize(plan.legs.len(), Share::default());
+            tally.absolute = [[Lanes::ZERO; GROUPS]; 2];
+        }
+        // Families whose lines may have changed: the touched one and all below it.
+        let mut dirty = [0u64; 4];
+        let is = |set: &[u64; 4], f: usize| set[f >> 6 & 3] >> (f & 63) & 1 == 1;
+        for f in 0..n {
+            let member = &plan.members[f];
+            let below = member.parent.is_some_and(|p| is(&dirty, p));
+            if touched.is_none() || touched == Some(f) || below {
+                dirty[f >> 6 & 3] |= 1 << (f & 63);
+            }
+            let feeds_changed = |p: Option<usize>| p.is_some() && p == touched;
+            let price_changed = touched.is_none()
+                || touched == Some(f)
+                || feeds_changed(member.parent)
+                || feeds_changed(member.bias.and_then(|b| b.1));
+            if price_changed || below {
+                family(clerk, plan, tally, f, groups);
+            }
+        }
+        for (k, &leg) in plan.legs.iter().enumerate() {
+            if is(&dirty, leg) {
+                output(ledger, plan, tally, k, leg, groups);
+            }
+        }
+        let mut price = Price {
+            area: 0.0,
+            overhead: 0.0,
+            excess: 0.0,
+            error_share: 0.0,
+        };
+        let mut references = 0;
+        for share in tally.families.iter().chain(&tally.outputs) {
+            price.area += share.area;
+            price.overhead += share.overhead;
+            price.excess += share.excess;
+            price.error_share = price.error_share.max(share.error_share);
+            references += share.references;
+        }
+        price.excess += references.max(ledger.copies) as f64 - ledger.copies as f64;
+        price.excess += (price.overhead / ledger.budget - 1.0 - 1e-9).max(0.0);
+        price
+    }
+}
+
+/// Prices family `f` and collects its line.
+#[inline(always)]
+fn family(clerk: &Clerk, plan: &Plan, tally: &mut Tally, f: usize, groups: usize) {
+    let ledger = clerk.ledger;
+    let member = &plan.members[f];
+    let c = ledger.candidate(member);
+    let unit = member.current / f64::from(member.units);
+    let bias_amps = member.bias.map_or(0.0, |b| b.0);
+    let mut share = Share {
+        area: c.input_area(unit, f64::from(member.units), bias_amps),
+        ..Share::default()
+    };
+    if !c.drawable(unit, member.units) {
+        share.excess += 1.0;
+    }
+    let mut line = START;
+    let feeds = [
+        Some((member.parent, member.current, c.input)),
+        member
+            .bias
+            .map(|(amps, from)| (from, amps, c.bias_voltage.unwrap_or_default())),
+    ];
+    for (which, feed) in feeds.into_iter().enumerate() {
+        let Some((parent, current, input)) = feed else {
+            continue;
+        };
+        share.overhead += current;
+        let Some(parent) = parent else {
+            share.references += 1;
+            share.excess += outside(input, ledger.pin);
+            if let Reference::Resistor { .. } = ledger.job.spec.reference {
+                let (ohms, error) = ledger.own_reference(current, c);
+                tally.absolute = error;
+                if let Some(card) = &ledger.job.card.resistor {
+                    share.area += crate::device::resistor_area(card, card.width, ohms, 1);
+                }
+            }
+            continue;
+        };
+        let from = &plan.members[parent];
+        let by = ledger.candidate(from);
+        let from_unit = from.current / f64::from(from.units);
+        let (units, rounding) = units_for(current, from_unit);
+        share.area += by.leg_area(from_unit, f64::from(units));
+        let end = &clerk.feeders[&(from.rail, from.candidate, member.candidate, which == 1)];
+        if which == 0 {
+            let up = &tally.lines[parent];
+            for g in 0..groups {
+                line.variance[g] = up.variance[g]
+                    + end.variance_in[g] * (1.0 / from.current)
+                    + end.variance_out[g] * (1.0 / current);
+                for s in 0..2 {
+                    line.error[s][g] = up.error[s][g] + end.error[s][g] + rounding;
+                }
+            }
+        } else {
+            // A bias leg only has to be there: a tenth off moves its gate by little.
+            share.excess += (end.worst + rounding.abs() - 0.1).max(0.0);
+        }
+    }
+    tally.lines[f] = line;
+    tally.families[f] = share;
+}
+
+/// Prices output `k` on family `leg`.
+#[inline(always)]
+fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize, groups: usize) {
+    let want = &ledger.wants[k];
+    let member = &plan.members[leg];
+    let c = ledger.candidate(member);
+    let unit = member.current / f64::from(member.units);
+    let (units, rounding) = units_for(want.current, unit);
+    let mut share = Share {
+        area: want.count * c.leg_area(unit, f64::from(units)),
+        ..Share::default()
+    };
+    if c.outputs[k].is_none() {
+        share.excess += 1.0;
+        tally.outputs[k] = share;
+        return;
+    }
+    if want.limit.is_infinite() {
+        tally.outputs[k] = share;
+        return;
+    }
+    let solved = &ledger.pool.shapes[c.rail as usize][c.index];
+    let line = &tally.lines[leg];
+    let (by_input, by_output) = (1.0 / member.current, 1.0 / want.current);
+    let mut worst = Lanes::ZERO;
+    for &probe in &ledger.ends[k] {
+        let copies = solved.at(probe);
+        for g in 0..groups {
+            let copy = &copies[g];
+            let variance =
+                line.variance[g] + copy.variance_in * by_input + copy.variance_out * by_output;
+            let own = copy.error + rounding;
+            let mut a = line.error[0][g] + own;
+            let mut b = line.error[1][g] + own;
+            if want.absolute {
+                a += tally.absolute[0][g];
+                b += tally.absolute[1][g];
+            }
+            worst = worst.max(a.abs().max(b.abs()) + variance.sqrt() * want.sigma);
+        }
+    }
+    share.error_share = worst.largest() / want.limit;
+    share.excess += (share.error_share - 1.0).max(0.0);
+    tally.outputs[k] = share;
+}
+
+/// How far a range sticks out of another, V.
 fn outside(range: [f64; 2], limits: [f64; 2]) -> f64 {
     (limits[0] - range[0]).max(0.0) + (range[1] - limits[1]).max(0.0)
 }

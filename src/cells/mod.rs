@@ -190,3 +190,65 @@ impl Unit {
 pub fn index_of(name: &str) -> Option<usize> {
     CELLS.iter().position(|c| c.name() == name)
 }
+
+/// Nearest point of a grid, at least `least`.
+fn on_grid(value: f64, grid: f64, least: f64) -> f64 {
+    let steps = (value / grid).round().max((least / grid - 1e-9).ceil());
+    steps * grid
+}
+
+impl Shape {
+    /// The shape with its lengths on the manufacturing grid and within the card's limits.
+    pub fn snapped(&self, tech: &Tech) -> Shape {
+        let mosfet = tech.mosfet();
+        let snap = |l: f64| {
+            let l = l.min(mosfet.length.most.0);
+            if l > 0.0 {
+                on_grid(l, mosfet.grid.0, mosfet.length.least.0)
+            } else {
+                0.0
+            }
+        };
+        Shape {
+            length: snap(self.length),
+            cascode_length: snap(self.cascode_length),
+            ..*self
+        }
+    }
+}
+
+impl Size {
+    /// The size on the manufacturing grid, no narrower or shorter than the card allows.
+    pub fn snapped(&self, tech: &Tech) -> Size {
+        let mosfet = tech.mosfet();
+        Size {
+            width: on_grid(self.width, mosfet.grid.0, mosfet.width.least.0),
+            length: on_grid(self.length, mosfet.grid.0, mosfet.length.least.0),
+        }
+    }
+}
+
+impl Unit {
+    /// The unit with every drawn size on the manufacturing grid; a resistor keeps the value its
+    /// drawn length gives. Bias sizes are per ampere and snapped when drawn.
+    pub fn snapped(&self, tech: &Tech) -> Unit {
+        let grid = tech.mosfet().grid.0;
+        let resistor = self.resistor.map(|body| match &tech.card.resistor {
+            Some(card) => {
+                let length = device::resistor_length(card, body.width, body.ohms);
+                let drawn = on_grid(length, grid, card.squares_min * body.width);
+                Body {
+                    ohms: drawn / body.width * card.sheet,
+                    ..body
+                }
+            }
+            None => body,
+        });
+        Unit {
+            mirror: self.mirror.snapped(tech),
+            cascode: self.cascode.map(|c| c.snapped(tech)),
+            resistor,
+            ..*self
+        }
+    }
+}

@@ -66,6 +66,37 @@ pub struct Solved {
     pub bias: Option<[f64; 2]>,
     /// Behaviour of an output leg at each probed voltage.
     pub probes: Vec<Probe>,
+    /// Voltage of the input leg at every climate, eight to a group, V from the rail.
+    pub input_lanes: Vec<Lanes>,
+    /// The same of the bias leg; empty where there is none.
+    pub bias_lanes: Vec<Lanes>,
+    /// What each probe does at every climate: `lanes[probe * groups + group]`.
+    pub lanes: Vec<Mirrored>,
+}
+
+/// A copy of one unit's current at eight climates.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Mirrored {
+    /// Systematic error, I_out / I_in - 1.
+    pub error: Lanes,
+    /// Mismatch variance of the input leg times its current, A.
+    pub variance_in: Lanes,
+    /// Mismatch variance of the output leg times its current, A.
+    pub variance_out: Lanes,
+}
+
+impl Solved {
+    /// Groups of eight climates.
+    pub fn groups(&self) -> usize {
+        self.input_lanes.len()
+    }
+
+    /// A probe at every climate.
+    #[inline(always)]
+    pub fn at(&self, probe: usize) -> &[Mirrored] {
+        let groups = self.groups();
+        &self.lanes[probe * groups..(probe + 1) * groups]
+    }
 }
 
 /// An output leg at one voltage, over all climates.
@@ -272,6 +303,16 @@ impl<'a> Solver<'a> {
                 };
                 self.probes.len()
             ],
+            input_lanes: Vec::with_capacity(self.groups.len()),
+            bias_lanes: Vec::new(),
+            lanes: vec![
+                Mirrored {
+                    error: Lanes::ZERO,
+                    variance_in: Lanes::ZERO,
+                    variance_out: Lanes::ZERO,
+                };
+                self.probes.len() * self.groups.len()
+            ],
         };
         for g in 0..self.groups.len() {
             self.solve_group(g, &draw, &mut solved)?;
@@ -287,6 +328,7 @@ impl<'a> Solver<'a> {
             Rail::Sink => 1.0,
             Rail::Source => -1.0,
         };
+        let groups = self.groups.len();
         let group = &mut self.groups[g];
         for (lanes, r) in group
             .circuit
@@ -309,15 +351,18 @@ impl<'a> Solver<'a> {
         let (circuit, state) = (&group.circuit, &group.state);
         let volts = |node: Node| state.volts[node] * sign;
         widen(&mut solved.input, volts(self.expected.input));
+        solved.input_lanes.push(volts(self.expected.input));
         if let (Some(node), Some(range)) = (self.expected.bias, solved.bias.as_mut()) {
             widen(range, volts(node));
+            solved.bias_lanes.push(volts(node));
         }
         let target = self.current;
         let tech = &self.tech;
         for (k, probe) in solved.probes.iter_mut().enumerate() {
             let pin = self.expected.pins[k];
             let current = circuit.current_from(state, pin) * sign;
-            widen(&mut probe.error, current / target - 1.0);
+            let error = current / target - 1.0;
+            widen(&mut probe.error, error);
             let conductance = circuit.conductance_at(state, pin);
             // A leg without output conductance has no finite Early voltage.
             let early = current / conductance.max(Lanes::splat(1e-30));
@@ -353,8 +398,14 @@ impl<'a> Solver<'a> {
                 mos(0..self.expected.input_mos) + resistors(0..self.expected.input_resistors);
             let output =
                 mos(mos_range[0]..mos_range[1]) + resistors(resistor_range[0]..resistor_range[1]);
-            probe.variance_in = probe.variance_in.max((input * scale).largest());
-            probe.variance_out = probe.variance_out.max((output * scale).largest());
+            let (variance_in, variance_out) = (input * scale, output * scale);
+            probe.variance_in = probe.variance_in.max(variance_in.largest());
+            probe.variance_out = probe.variance_out.max(variance_out.largest());
+            solved.lanes[k * groups + g] = Mirrored {
+                error,
+                variance_in,
+                variance_out,
+            };
         }
         Ok(())
     }

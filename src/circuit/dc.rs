@@ -1,11 +1,17 @@
-//! The DC solution: nodal equations, Newton with the exact Jacobian, continuation where it fails.
+//! The DC solution: nodal equations, Newton with the exact Jacobian, drag where it fails.
 //!
 //! One [`Circuit`] holds one netlist at eight corners side by side. Newton's equations are set up
 //! at the unknown nodes only; a node tied to ground through a voltage source is known.
 //! Convergence asks for both: the last step below 3e-7 V (the next would be its square over
 //! 2 UT, some 1e-12 V) and Kirchhoff's current law at every node to 1e-9 of the currents
-//! that meet there. A lane that fails is retried by source stepping and then by gmin
-//! stepping (Ho, Ruehli, Brennan, IEEE Trans. CAS 22, 1975); what still fails is reported.
+//! that meet there, or to the rounding of the node's voltage. A lane that fails is retried under drag, as if every node had a capacitance
+//! that lets its imbalance move it only so far (pseudo-transient continuation: Kelley & Keyes,
+//! SIAM J. Numer. Anal. 35, 1998); what still fails is reported.
+//!
+//! The order of elimination belongs to the netlist: it is chosen as if every transistor were
+//! saturated, so that a solution does not depend on what was solved before it. Where a pivot of that
+//! order is zero after all (square-law devices that are off, or have no output conductance),
+//! an order of its own is made for that solution.
 
 use super::netlist::{GROUND, Netlist, Node, Polarity};
 use crate::device::{Device, Point};
@@ -23,8 +29,53 @@ const STEP_DONE: f64 = 3e-7;
 const RESIDUAL_DONE: f64 = 1e-9;
 /// Current below which a node's balance is not resolved, A.
 const CURRENT_FLOOR: f64 = 1e-20;
+/// What the rounding of a node's voltage does to its balance: four units in the last place times
+/// the node's conductance must be able to pass. It counts where a device conducts well at next to no
+/// voltage.
+const ROUNDING: f64 = 4.0 * f64::EPSILON / RESIDUAL_DONE;
 /// Newton iterations before a lane counts as stuck.
 const ITERATIONS: u32 = 60;
+/// The two attempts under drag, a bold and a patient one.
+const DRAGS: [Drag; 2] = [
+    Drag {
+        first: 0.1,
+        most: 0.3,
+        iterations: 200,
+    },
+    Drag {
+        first: 0.05,
+        most: 0.05,
+        iterations: 300,
+    },
+];
+/// Growth of a node's reach while it moves one way, and its loss when it turns back. The loss
+/// outweighs two growths, so that a node caught in a cycle of three steps is freed.
+const REACH_GROWTH: f64 = 1.5;
+const REACH_LOSS: f64 = 0.4;
+/// Least reach, V: near the solution, rounding alone turns a node back.
+const REACH_LEAST: f64 = 1e-3;
+/// Imbalance that every node is taken to have at least under drag, A: far below any current, and
+/// enough to keep the matrix regular where every device is off.
+const DRAG_FLOOR: f64 = 1e-16;
+/// Orders of elimination tried in one run of Newton.
+const PLANS: u32 = 4;
+/// Slopes of the imagined saturated transistor by which the order of elimination is chosen, and of
+/// a resistor beside it. Only their order of magnitude matters.
+const TYPICAL_GM: f64 = 1.0;
+const TYPICAL_GMS: f64 = 1.3;
+const TYPICAL_GDS: f64 = 0.01;
+const TYPICAL_RESISTOR: f64 = 0.5;
+
+/// Drag on every node: it adds the conductance |imbalance|/reach to the node's diagonal, without a
+/// current, so that nothing but the way to the solution changes. It vanishes with the imbalance.
+#[derive(Debug, Clone, Copy)]
+struct Drag {
+    /// Reach at first, V.
+    first: f64,
+    /// Largest reach, V.
+    most: f64,
+    iterations: u32,
+}
 
 /// A transistor in eight lanes.
 #[derive(Debug, Clone)]
@@ -100,11 +151,16 @@ pub struct State {
     pub residual: [f64; 8],
     /// Newton iterations spent.
     pub iterations: u32,
+    /// The order of elimination of this solution, where the circuit's did not serve.
+    plan: Option<Plan>,
     pub(super) factors: Factors,
     pub(super) factored: bool,
     f: Vec<Lanes>,
     scale: Vec<Lanes>,
     dx: Vec<Lanes>,
+    /// Under drag: the reach of every unknown node, V, and the step it took last.
+    reach: Vec<Lanes>,
+    last: Vec<Lanes>,
 }
 
 impl Circuit {
@@ -135,7 +191,7 @@ impl Circuit {
                 n += 1;
             }
         }
-        // Every diagonal has a place: gmin stepping needs it.
+        // Every diagonal has a place: drag needs it.
         let mut pattern: Vec<(usize, usize)> = (0..n).map(|i| (i, i)).collect();
         let diagonal = (0..n as u32).collect();
         let mut entry = |r: u32, c: u32| {
@@ -185,7 +241,7 @@ impl Circuit {
                 amps: Lanes::splat(s.amps),
             })
             .collect();
-        Ok(Circuit {
+        let mut circuit = Circuit {
             mos,
             resistors,
             currents,
@@ -195,7 +251,29 @@ impl Circuit {
             pattern,
             diagonal,
             plan: None,
-        })
+        };
+        circuit.plan = circuit.typical_plan();
+        Ok(circuit)
+    }
+
+    /// The order of elimination for saturated transistors. `None` where even they would leave the
+    /// matrix singular, as a node that no channel or resistor reaches does.
+    fn typical_plan(&self) -> Option<Plan> {
+        let lane = Lanes::splat;
+        let mut values = vec![Lanes::ZERO; self.pattern.len()];
+        let saturated = Point {
+            gm: lane(TYPICAL_GM),
+            gms: lane(TYPICAL_GMS),
+            gds: lane(TYPICAL_GDS),
+            ..Point::OFF
+        };
+        for m in &self.mos {
+            m.stamp(&saturated, |e, g| values[e] += g);
+        }
+        for r in &self.resistors {
+            r.stamp(lane(TYPICAL_RESISTOR), |e, g| values[e] += g);
+        }
+        Plan::new(self.n, &self.pattern, &values)
     }
 
     /// Number of unknown nodes.
@@ -207,76 +285,99 @@ impl Circuit {
         (self.row[node] != NONE).then_some(self.row[node] as usize)
     }
 
-    pub(super) fn plan(&self) -> &Plan {
-        self.plan
-            .as_ref()
-            .expect("a plan is made by the first solution")
+    /// The order of elimination that `state` was factorised by.
+    pub(super) fn plan<'a>(&'a self, state: &'a State) -> &'a Plan {
+        let plan = state.plan.as_ref().or(self.plan.as_ref());
+        plan.expect("a converged solution has an order of elimination")
     }
 
     /// Solves from the voltages in `state.volts` (unknown nodes; the known ones are set here).
     /// Returns whether every lane converged; `state` says which.
-    pub fn solve(&mut self, state: &mut State) -> bool {
+    pub fn solve(&self, state: &mut State) -> bool {
         assert_eq!(
             state.volts.len(),
             self.fixed.len(),
             "one starting voltage per node"
         );
         let start = state.volts.clone();
-        if self.newton(state, 1.0, 0.0) {
+        state.plan = None;
+        if self.newton(state, None) {
             return true;
         }
         self.rescue(state, &start);
         state.converged.iter().all(|&c| c)
     }
 
-    /// Newton at `share` of every source, with `gmin` from every unknown node to ground.
-    fn newton(&mut self, state: &mut State, share: f64, gmin: f64) -> bool {
-        for (node, value) in self.fixed.iter().enumerate() {
-            if let Some(v) = value {
-                state.volts[node] = *v * share;
-            }
+    /// Newton from the present voltages.
+    fn newton(&self, state: &mut State, drag: Option<&Drag>) -> bool {
+        self.tie(state);
+        state.iterations = 0;
+        state.converged = [false; 8];
+        if let Some(drag) = drag {
+            state.reach.clear();
+            state.reach.resize(self.n, Lanes::splat(drag.first));
+            state.last.clear();
+            state.last.resize(self.n, Lanes::ZERO);
         }
-        if self.plan.is_none() && !self.make_plan(state, share, gmin) {
-            state.converged = [false; 8];
+        let mut hopeless = Mask::NONE;
+        if state.plan.is_none() && self.plan.is_none() && !self.replan(state, drag.is_some()) {
             return false;
         }
-        let done = widest(Newton {
-            circuit: self,
-            state,
-            share,
-            gmin,
-        });
-        if !done && state.residual.iter().any(|r| !r.is_finite()) {
-            // A pivot order that fits one bias point can fail at another: forget it.
-            self.plan = None;
-        }
-        done
-    }
-
-    fn make_plan(&mut self, state: &mut State, share: f64, gmin: f64) -> bool {
-        // Unplanned slots equal entries: assemble into them and read one lane.
-        state.prepare(self.n, self.mos.len());
-        state.factors = Factors::zeroed(self.pattern.len());
-        assemble(self, state, share, gmin, |entry| entry);
-        for lane in 0..8 {
-            let values: Vec<f64> = (0..self.pattern.len())
-                .map(|e| state.factors.value(e).0[lane])
-                .collect();
-            if let Some(plan) = Plan::new(self.n, &self.pattern, &values) {
-                self.plan = Some(plan);
-                return true;
+        for round in 1.. {
+            let end = widest(Newton {
+                circuit: self,
+                state,
+                drag,
+                hopeless,
+            });
+            match end {
+                End::Converged => return true,
+                End::Spent => return false,
+                End::Singular => {
+                    if !self.replan(state, drag.is_some()) {
+                        return false;
+                    }
+                    hopeless = if round < PLANS {
+                        self.plan(state).serves().not()
+                    } else {
+                        Mask::NONE.not()
+                    };
+                }
             }
         }
         false
     }
 
-    /// Source stepping, then gmin stepping, for the lanes Newton left.
-    fn rescue(&mut self, state: &mut State, start: &[Lanes]) {
+    /// Sets the known nodes.
+    fn tie(&self, state: &mut State) {
+        for (node, value) in self.fixed.iter().enumerate() {
+            if let Some(v) = value {
+                state.volts[node] = *v;
+            }
+        }
+    }
+
+    /// Makes an order of elimination for the matrix at the present voltages.
+    fn replan(&self, state: &mut State, dragged: bool) -> bool {
+        state.prepare(self.n, self.mos.len());
+        // Unplanned slots equal entries.
+        state.factors = Factors::zeroed(self.pattern.len());
+        assemble(self, state, dragged, |entry| entry);
+        let values: Vec<Lanes> = (0..self.pattern.len())
+            .map(|e| state.factors.value(e))
+            .collect();
+        state.plan = Plan::new(self.n, &self.pattern, &values);
+        state.plan.is_some()
+    }
+
+    /// Retries the lanes Newton left, under drag from where they started.
+    fn rescue(&self, state: &mut State, start: &[Lanes]) {
         let mut best = state.clone();
-        let mut iterations = state.iterations;
-        let mut adopt = |state: &State, best: &mut State| {
-            iterations += state.iterations;
-            best.iterations = iterations;
+        for drag in &DRAGS {
+            state.volts.copy_from_slice(start);
+            state.plan = None;
+            self.newton(state, Some(drag));
+            best.iterations += state.iterations;
             for lane in 0..8 {
                 if !best.converged[lane] && state.converged[lane] {
                     for (to, from) in best.volts.iter_mut().zip(&state.volts) {
@@ -286,74 +387,66 @@ impl Circuit {
                     best.residual[lane] = state.residual[lane];
                 }
             }
-            best.converged.iter().all(|&c| c)
-        };
-        let ramps: [&[(f64, f64)]; 2] = [
-            // (share of the sources, gmin)
-            &[
-                (0.02, 0.0),
-                (0.05, 0.0),
-                (0.1, 0.0),
-                (0.2, 0.0),
-                (0.3, 0.0),
-                (0.4, 0.0),
-                (0.5, 0.0),
-                (0.6, 0.0),
-                (0.7, 0.0),
-                (0.8, 0.0),
-                (0.9, 0.0),
-                (0.95, 0.0),
-            ],
-            &[
-                (1.0, 1e-4),
-                (1.0, 1e-5),
-                (1.0, 1e-6),
-                (1.0, 1e-7),
-                (1.0, 1e-8),
-                (1.0, 1e-9),
-                (1.0, 1e-10),
-                (1.0, 1e-11),
-                (1.0, 1e-12),
-                (1.0, 1e-13),
-            ],
-        ];
-        for ramp in ramps {
-            state.volts.copy_from_slice(start);
-            self.plan = None;
-            for &(share, gmin) in ramp {
-                // An intermediate point that fails leaves its best guess to the next one.
-                self.newton(state, share, gmin);
-                for v in &mut state.volts {
-                    *v = Lanes::from_fn(|i| if v.0[i].is_finite() { v.0[i] } else { 0.0 });
-                }
-            }
-            self.newton(state, 1.0, 0.0);
-            if adopt(state, &mut best) {
+            if best.converged.iter().all(|&c| c) {
                 break;
             }
         }
         // Evaluate once more so that points and slopes belong to the adopted voltages.
         std::mem::swap(state, &mut best);
-        let (converged, residual) = (state.converged, state.residual);
-        self.newton_once(state);
-        state.converged = converged;
-        state.residual = residual;
+        self.evaluate(state);
     }
 
     /// Evaluates every element at the present voltages, without a step.
-    fn newton_once(&mut self, state: &mut State) {
-        for (node, value) in self.fixed.iter().enumerate() {
-            if let Some(v) = value {
-                state.volts[node] = *v;
+    pub(super) fn evaluate(&self, state: &mut State) {
+        self.tie(state);
+        if state.plan.is_some() || self.plan.is_some() || self.replan(state, false) {
+            widest(Evaluate {
+                circuit: self,
+                state,
+            });
+        }
+    }
+
+    /// Makes the order of elimination anew at the present voltages and evaluates there.
+    pub(super) fn evaluate_anew(&self, state: &mut State) {
+        if self.replan(state, false) {
+            self.evaluate(state);
+        }
+    }
+}
+
+impl MosLanes {
+    /// Adds the slopes of the terminal currents to their places in the matrix.
+    #[inline(always)]
+    fn stamp(&self, p: &Point, mut add: impl FnMut(usize, Lanes)) {
+        // Columns in the order drain, gate, source, bulk.
+        let channel = [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm];
+        let [bg, bd, bs] = p.ib_slopes;
+        let impact = [bd, bg, bs, -(bd + bg + bs)];
+        for j in 0..4 {
+            if self.slots[j] != NONE {
+                add(self.slots[j] as usize, channel[j] + impact[j]);
+            }
+            if self.slots[4 + j] != NONE {
+                add(self.slots[4 + j] as usize, -channel[j]);
+            }
+            if self.slots[8 + j] != NONE {
+                add(self.slots[8 + j] as usize, -impact[j]);
             }
         }
-        if self.plan.is_none() && !self.make_plan(state, 1.0, 0.0) {
-            return;
+    }
+}
+
+impl ResistorLanes {
+    /// Adds `conductance` to its places in the matrix.
+    #[inline(always)]
+    fn stamp(&self, conductance: Lanes, mut add: impl FnMut(usize, Lanes)) {
+        let signs = [1.0, -1.0, -1.0, 1.0];
+        for (k, sign) in signs.into_iter().enumerate() {
+            if self.slots[k] != NONE {
+                add(self.slots[k] as usize, conductance * sign);
+            }
         }
-        widest(Evaluate {
-            circuit: self,
-            state,
-        });
     }
 }
 
@@ -381,21 +474,17 @@ impl State {
     }
 }
 
-/// Residual and Jacobian at the present voltages; `slot` says where an entry of the pattern goes.
+/// Residual and Jacobian at the present voltages, the latter with the drag of `state.reach` if
+/// `dragged`; `slot` says where an entry of the pattern goes.
 #[inline(always)]
-fn assemble(
-    circuit: &Circuit,
-    state: &mut State,
-    share: f64,
-    gmin: f64,
-    slot: impl Fn(usize) -> usize,
-) {
+fn assemble(circuit: &Circuit, state: &mut State, dragged: bool, slot: impl Fn(usize) -> usize) {
     let State {
         volts,
         points,
         f,
         scale,
         factors,
+        reach,
         ..
     } = state;
     for (m, point) in circuit.mos.iter().zip(points.iter_mut()) {
@@ -410,49 +499,25 @@ fn assemble(
         let id = p.id * m.sign;
         let ib = p.ib * m.sign;
         let [rd, rs, rb] = [circuit.row[d], circuit.row[s], circuit.row[b]];
-        // Columns in the order drain, gate, source, bulk.
-        let channel = [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm];
-        let [bg, bd, bs] = p.ib_slopes;
-        let impact = [bd, bg, bs, -(bd + bg + bs)];
         if rd != NONE {
             let r = rd as usize;
             f[r] += id + ib;
             scale[r] += (id + ib).abs();
-            for j in 0..4 {
-                if m.slots[j] != NONE {
-                    factors.add(slot(m.slots[j] as usize), channel[j] + impact[j]);
-                }
-            }
         }
         if rs != NONE {
             let r = rs as usize;
             f[r] -= id;
             scale[r] += id.abs();
-            for j in 0..4 {
-                if m.slots[4 + j] != NONE {
-                    factors.add(slot(m.slots[4 + j] as usize), -channel[j]);
-                }
-            }
         }
         if rb != NONE {
-            let r = rb as usize;
-            f[r] -= ib;
-            for j in 0..4 {
-                if m.slots[8 + j] != NONE {
-                    factors.add(slot(m.slots[8 + j] as usize), -impact[j]);
-                }
-            }
+            f[rb as usize] -= ib;
         }
+        m.stamp(&p, |entry, g| factors.add(slot(entry), g));
     }
     for r in &circuit.resistors {
         let [a, b] = r.nodes;
         let i = (volts[a] - volts[b]) * r.conductance;
-        let signs = [1.0, -1.0, -1.0, 1.0];
-        for (k, sign) in signs.into_iter().enumerate() {
-            if r.slots[k] != NONE {
-                factors.add(slot(r.slots[k] as usize), r.conductance * sign);
-            }
-        }
+        r.stamp(r.conductance, |entry, g| factors.add(slot(entry), g));
         for (node, sign) in [(a, 1.0), (b, -1.0)] {
             let row = circuit.row[node];
             if row != NONE {
@@ -462,57 +527,71 @@ fn assemble(
         }
     }
     for s in &circuit.currents {
-        let i = s.amps * share;
         for (node, sign) in [(s.nodes[0], 1.0), (s.nodes[1], -1.0)] {
             let row = circuit.row[node];
             if row != NONE {
-                f[row as usize] += i * sign;
-                scale[row as usize] += i.abs();
+                f[row as usize] += s.amps * sign;
+                scale[row as usize] += s.amps.abs();
             }
         }
     }
-    if gmin > 0.0 {
-        for (node, &row) in circuit.row.iter().enumerate() {
-            if row != NONE {
-                let r = row as usize;
-                let i = volts[node] * gmin;
-                f[r] += i;
-                scale[r] += i.abs();
-                factors.add(slot(circuit.diagonal[r] as usize), Lanes::splat(gmin));
-            }
+    if dragged {
+        for ((f, reach), &diagonal) in f.iter().zip(&*reach).zip(&circuit.diagonal) {
+            let g = (f.abs() + DRAG_FLOOR) / *reach;
+            factors.add(slot(diagonal as usize), g);
         }
     }
+}
+
+/// How a run of Newton ended.
+enum End {
+    /// Every lane converged.
+    Converged,
+    /// The iterations are used up.
+    Spent,
+    /// In some lane that still has hope the order of elimination met a zero pivot.
+    Singular,
 }
 
 struct Newton<'a> {
     circuit: &'a Circuit,
     state: &'a mut State,
-    share: f64,
-    gmin: f64,
+    drag: Option<&'a Drag>,
+    /// Lanes whose matrix no order of elimination serves; they stand still.
+    hopeless: Mask,
 }
 
 impl Work for Newton<'_> {
-    type Answer = bool;
+    type Answer = End;
 
     #[inline(always)]
-    fn run(self) -> bool {
+    fn run(self) -> End {
         let Newton {
             circuit,
             state,
-            share,
-            gmin,
+            drag,
+            hopeless,
         } = self;
-        let plan = circuit.plan();
-        let mut step = Lanes::splat(f64::INFINITY);
-        state.iterations = 0;
-        loop {
+        let iterations = drag.map_or(ITERATIONS, |d| d.iterations);
+        let own = state.plan.take();
+        let plan = own.as_ref().or(circuit.plan.as_ref());
+        let plan = plan.expect("the caller saw to an order of elimination");
+        let never = Lanes::splat(f64::INFINITY);
+        let mut step = never;
+        let end = loop {
             state.iterations += 1;
             state.prepare(circuit.n, circuit.mos.len());
             plan.clear(&mut state.factors);
-            assemble(circuit, state, share, gmin, |e| plan.slot(e));
+            assemble(circuit, state, drag.is_some(), |e| plan.slot(e));
             let mut residual = Lanes::ZERO;
-            for (f, scale) in state.f.iter().zip(&state.scale) {
-                residual = residual.max(f.abs() / (*scale + CURRENT_FLOOR));
+            for (node, &row) in circuit.row.iter().enumerate() {
+                if row != NONE {
+                    let r = row as usize;
+                    let slope = state.factors.value(plan.slot(circuit.diagonal[r] as usize));
+                    let rounding = (slope * state.volts[node]).abs() * ROUNDING;
+                    let scale = state.scale[r] + rounding + CURRENT_FLOOR;
+                    residual = residual.max(state.f[r].abs() / scale);
+                }
             }
             let done: Mask = step
                 .lt(Lanes::splat(STEP_DONE))
@@ -520,12 +599,15 @@ impl Work for Newton<'_> {
             state.converged = done.0;
             state.residual = residual.0;
             if done.all() {
-                return true;
+                break End::Converged;
             }
-            if state.iterations >= ITERATIONS {
-                return false;
+            if state.iterations >= iterations {
+                break End::Spent;
             }
-            plan.factor(&mut state.factors);
+            let sound = plan.factor(&mut state.factors);
+            if !sound.or(done).or(hopeless).all() {
+                break End::Singular;
+            }
             plan.solve(&state.factors, &mut state.f, &mut state.dx);
             step = Lanes::ZERO;
             let most = Lanes::splat(STEP_MOST);
@@ -533,10 +615,23 @@ impl Work for Newton<'_> {
                 if row != NONE {
                     let d = state.dx[row as usize].min(most).max(-most);
                     step = step.max(d.abs());
-                    state.volts[node] -= d;
+                    state.volts[node] -= Lanes::select(sound, d, Lanes::ZERO);
                 }
             }
-        }
+            step = Lanes::select(sound, step, never);
+            if let Some(drag) = drag {
+                for ((reach, last), d) in state.reach.iter_mut().zip(&mut state.last).zip(&state.dx)
+                {
+                    let longer = (*reach * REACH_GROWTH).min(Lanes::splat(drag.most));
+                    let turned = (*d * *last).lt(Lanes::ZERO);
+                    let shorter = (*reach * REACH_LOSS).max(Lanes::splat(REACH_LEAST));
+                    *reach = Lanes::select(turned, shorter, longer);
+                    *last = *d;
+                }
+            }
+        };
+        state.plan = own;
+        end
     }
 }
 
@@ -551,9 +646,12 @@ impl Work for Evaluate<'_> {
     #[inline(always)]
     fn run(self) {
         let Evaluate { circuit, state } = self;
-        let plan = circuit.plan();
+        let own = state.plan.take();
+        let plan = own.as_ref().or(circuit.plan.as_ref());
+        let plan = plan.expect("the caller saw to an order of elimination");
         state.prepare(circuit.n, circuit.mos.len());
         plan.clear(&mut state.factors);
-        assemble(circuit, state, 1.0, 0.0, |e| plan.slot(e));
+        assemble(circuit, state, false, |e| plan.slot(e));
+        state.plan = own;
     }
 }

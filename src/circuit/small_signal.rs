@@ -5,7 +5,7 @@
 use super::dc::{Circuit, State};
 use super::netlist::Node;
 use crate::numeric::dispatch::{Work, widest};
-use crate::numeric::lanes::Lanes;
+use crate::numeric::lanes::{Lanes, Mask};
 
 /// Sensitivities of one pin's current.
 #[derive(Debug, Clone, Default)]
@@ -21,13 +21,21 @@ pub struct Sensitivity {
 impl Circuit {
     /// Factorises the Jacobian at the solution; the functions below need it.
     pub fn linearise(&self, state: &mut State) {
-        if !state.factored {
+        if state.factored {
+            return;
+        }
+        let sound = widest(Factorise {
+            circuit: self,
+            state,
+        });
+        if !sound.or(Mask(state.converged).not()).all() {
+            self.evaluate_anew(state);
             widest(Factorise {
                 circuit: self,
                 state,
             });
-            state.factored = true;
         }
+        state.factored = true;
     }
 
     /// Current that flows from a node into the elements on it, A.
@@ -120,7 +128,7 @@ impl Circuit {
         let mut rhs = vec![Lanes::ZERO; n];
         self.driven_by(state, driven, &mut rhs);
         let mut dv = vec![Lanes::ZERO; n];
-        self.plan().solve(&state.factors, &mut rhs, &mut dv);
+        self.plan(state).solve(&state.factors, &mut rhs, &mut dv);
         for (g, d) in by_row.iter().zip(&dv) {
             direct -= *g * *d;
         }
@@ -188,7 +196,8 @@ impl Circuit {
     /// J^T y = c.
     fn adjoint(&self, state: &State, mut c: Vec<Lanes>, pin: Option<Node>) -> Sensitivity {
         let mut y = vec![Lanes::ZERO; self.unknowns()];
-        self.plan().solve_transposed(&state.factors, &mut c, &mut y);
+        self.plan(state)
+            .solve_transposed(&state.factors, &mut c, &mut y);
         let weight = |node: Node| match self.row(node) {
             Some(r) => -y[r],
             None if Some(node) == pin => Lanes::ONE,
@@ -219,9 +228,14 @@ struct Factorise<'a> {
 }
 
 impl Work for Factorise<'_> {
-    type Answer = ();
+    /// Lanes in which no pivot was zero.
+    type Answer = Mask;
     #[inline(always)]
-    fn run(self) {
-        self.circuit.plan().factor(&mut self.state.factors);
+    fn run(self) -> Mask {
+        let Factorise { circuit, state } = self;
+        let mut factors = std::mem::take(&mut state.factors);
+        let sound = circuit.plan(state).factor(&mut factors);
+        state.factors = factors;
+        sound
     }
 }

@@ -11,6 +11,7 @@ pub mod power;
 
 use crate::network::Job;
 use crate::network::corners::Corner;
+pub use crate::network::measure::Worst;
 
 /// Every figure, in the order of reports. A new one is a file and two lines.
 pub static FIGURES: [&dyn Figure; 7] = [
@@ -63,27 +64,6 @@ pub struct Subject<'s> {
     pub overhead: &'s [f64],
     /// Per output: the worst of each kind.
     pub outputs: &'s [Worst],
-}
-
-/// The worst of one output over corners and over its range.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub struct Worst {
-    /// Worst current error (systematic + k sigma), fraction.
-    pub error: f64,
-    /// Corner of it, index.
-    pub error_corner: usize,
-    /// Which end of the range it is worst at: 0 low, 1 high.
-    pub error_end: usize,
-    /// Error limit, if any, fraction.
-    pub limit: Option<f64>,
-    /// Least voltage from the rail at which the output still meets its limit, V.
-    pub headroom: f64,
-    /// Corner of it, index.
-    pub headroom_corner: usize,
-    /// Output resistance at the low end of the range, Ohm.
-    pub resistance: f64,
-    /// Corner of it, index.
-    pub resistance_corner: usize,
 }
 
 /// A figure's value and where it is worst.

@@ -5,6 +5,8 @@ pub mod bench;
 pub mod corners;
 pub mod detail;
 pub mod drawing;
+pub mod measure;
+pub mod probes;
 
 use crate::cells::{CELLS, Shape, Size, Tech, Unit};
 use crate::device;

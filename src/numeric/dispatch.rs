@@ -51,3 +51,24 @@ fn with_avx2<W: Work>(work: W) -> W::Answer {
 pub fn narrowest<W: Work>(work: W) -> W::Answer {
     work.run()
 }
+
+/// Runs `work` once with every instruction set of this machine for which a copy exists, narrowest
+/// first, and says which: what [`widest`] promises can be checked with this.
+pub fn each<W: Work + Clone>(work: &W) -> Vec<(&'static str, W::Answer)> {
+    let mut answers = vec![("baseline", work.clone().run())];
+    #[cfg(target_arch = "x86_64")]
+    {
+        if std::is_x86_feature_detected!("avx2") {
+            // SAFETY: the feature the copy is compiled for was just detected.
+            answers.push(("avx2", unsafe { with_avx2(work.clone()) }));
+        }
+        if std::is_x86_feature_detected!("avx512f")
+            && std::is_x86_feature_detected!("avx512dq")
+            && std::is_x86_feature_detected!("avx512vl")
+        {
+            // SAFETY: the three features the copy is compiled for were just detected.
+            answers.push(("avx512", unsafe { with_avx512(work.clone()) }));
+        }
+    }
+    answers
+}

@@ -107,6 +107,12 @@ impl Mask {
         }
         Mask(out)
     }
+    /// True where this is false.
+    #[inline(always)]
+    #[expect(clippy::should_implement_trait, reason = "reads like its siblings")]
+    pub fn not(self) -> Mask {
+        Mask(self.0.map(|b| !b))
+    }
     /// Whether every lane is true.
     #[inline(always)]
     pub fn all(self) -> bool {

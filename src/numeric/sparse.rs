@@ -1,11 +1,11 @@
 //! Sparse LU over lanes: the elimination is planned once for a pattern, then replayed.
 //!
 //! Pivots are chosen by Markowitz's rule (Management Science 3, 1957) among those that are at
-//! least a tenth of the largest entry of their column, on one lane's numbers; the same order then
+//! least a tenth of the largest entry of their column, in every lane; the same order then
 //! serves every lane and every Newton iteration of the circuit, so the inner loop is a list of
 //! multiply-subtracts with no search and no branch.
 
-use super::lanes::Lanes;
+use super::lanes::{Lanes, Mask, WIDTH};
 
 /// A pivot may be this much smaller than the largest entry of its column.
 const THRESHOLD: f64 = 0.1;
@@ -25,6 +25,8 @@ pub struct Plan {
     upper: Vec<(u32, u32)>, // (slot, column)
     lower: Vec<(u32, u32)>, // (slot, row)
     updates: Vec<u32>,      // target slots, row by row: one per (lower, upper) pair
+    /// Lanes in which every pivot was regular.
+    serves: [bool; WIDTH],
 }
 
 #[derive(Debug, Clone, Copy, Default)]
@@ -35,6 +37,33 @@ struct Step {
     updates: u32,
 }
 
+/// A possible next pivot.
+struct Candidate {
+    row: usize,
+    column: usize,
+    /// Markowitz's count of the entries it may fill.
+    cost: usize,
+    /// Its share of its column's largest entry, in the lane where that is least.
+    worst: f64,
+    /// Number of lanes in which it is not zero.
+    usable: usize,
+}
+
+impl Candidate {
+    /// Usable in more lanes; then large enough; then cheap; then large.
+    fn beats(&self, other: &Candidate) -> bool {
+        if self.usable != other.usable {
+            return self.usable > other.usable;
+        }
+        match (self.worst >= THRESHOLD, other.worst >= THRESHOLD) {
+            (true, true) if self.cost != other.cost => self.cost < other.cost,
+            (true, false) => true,
+            (false, true) => false,
+            _ => self.worst > other.worst,
+        }
+    }
+}
+
 /// Factors of one matrix, in the slots of its plan: U's rows and L's multipliers, with the
 /// pivots inverted.
 #[derive(Debug, Clone, Default)]
@@ -43,12 +72,13 @@ pub struct Factors {
 }
 
 impl Plan {
-    /// Plans the elimination of a matrix with entries at `pattern` (row, column), whose values in
-    /// one lane are `values`. Returns `None` where that lane's matrix is singular.
-    pub fn new(n: usize, pattern: &[(usize, usize)], values: &[f64]) -> Option<Plan> {
+    /// Plans the elimination of a matrix with entries at `pattern` (row, column) and these
+    /// `values`. A lane whose matrix is singular, or not finite, has no say in the order; `None`
+    /// where every lane is one.
+    pub fn new(n: usize, pattern: &[(usize, usize)], values: &[Lanes]) -> Option<Plan> {
         // Small dense bookkeeping: n is some hundreds at most, and a plan is made once a circuit.
         let mut slot_of = vec![u32::MAX; n * n];
-        let mut dense = vec![0.0; n * n];
+        let mut dense = vec![Lanes::ZERO; n * n];
         let mut slots = 0u32;
         let mut input = Vec::with_capacity(pattern.len());
         for (&(r, c), &value) in pattern.iter().zip(values) {
@@ -62,6 +92,7 @@ impl Plan {
         let mut plan = Plan {
             n,
             input,
+            serves: std::array::from_fn(|i| values.iter().all(|v| v.0[i].is_finite())),
             ..Plan::default()
         };
         let mut row_free = vec![true; n];
@@ -77,41 +108,51 @@ impl Plan {
             }
         }
         for _ in 0..n {
-            let mut best: Option<(usize, f64, usize, usize)> = None;
+            let mut best: Option<Candidate> = None;
             for c in (0..n).filter(|&c| col_free[c]) {
                 // A column that cannot beat the best cost found so far is passed over.
-                if let Some((cost, ..)) = best
-                    && cost == 0
+                if let Some(found) = &best
+                    && found.worst >= THRESHOLD
+                    && found.cost == 0
                     && col_count[c] > 1
                 {
                     continue;
                 }
-                let largest = (0..n)
-                    .filter(|&r| row_free[r] && slot_of[r * n + c] != u32::MAX)
-                    .map(|r| dense[r * n + c].abs())
-                    .fold(0.0, f64::max);
-                if largest == 0.0 || !largest.is_finite() {
-                    continue;
-                }
-                for r in (0..n).filter(|&r| row_free[r] && slot_of[r * n + c] != u32::MAX) {
-                    let size = dense[r * n + c].abs();
-                    if size < THRESHOLD * largest {
-                        continue;
-                    }
-                    let cost = (row_count[r] - 1) * (col_count[c] - 1);
-                    let share = size / largest;
-                    let better = match best {
-                        None => true,
-                        Some((old, old_share, ..)) => {
-                            cost < old || (cost == old && share > old_share)
-                        }
+                let rows = (0..n).filter(|&r| row_free[r] && slot_of[r * n + c] != u32::MAX);
+                let largest = rows
+                    .clone()
+                    .fold(Lanes::ZERO, |most, r| most.max(dense[r * n + c].abs()));
+                for r in rows {
+                    let share = dense[r * n + c].abs() / largest;
+                    let candidate = Candidate {
+                        row: r,
+                        column: c,
+                        cost: (row_count[r] - 1) * (col_count[c] - 1),
+                        worst: (0..WIDTH)
+                            .filter(|&i| plan.serves[i])
+                            // Zero by zero, in a column without entries, is no share.
+                            .fold(1.0, |worst, i| share.0[i].max(0.0).min(worst)),
+                        usable: (0..WIDTH)
+                            .filter(|&i| plan.serves[i] && share.0[i] > 0.0)
+                            .count(),
                     };
-                    if better {
-                        best = Some((cost, share, r, c));
+                    if best.as_ref().is_none_or(|found| candidate.beats(found)) {
+                        best = Some(candidate);
                     }
                 }
             }
-            let (_, _, pr, pc) = best?;
+            let Candidate {
+                row: pr,
+                column: pc,
+                usable,
+                ..
+            } = best?;
+            if usable == 0 {
+                return None;
+            }
+            for i in 0..WIDTH {
+                plan.serves[i] &= dense[pr * n + pc].0[i] != 0.0;
+            }
             row_free[pr] = false;
             col_free[pc] = false;
             let upper_start = plan.upper.len() as u32;
@@ -136,7 +177,8 @@ impl Plan {
                         row_count[r] += 1;
                         col_count[c] += 1;
                     }
-                    dense[r * n + c] -= factor * dense[pr * n + c];
+                    let update = factor * dense[pr * n + c];
+                    dense[r * n + c] -= update;
                     plan.updates.push(slot_of[r * n + c]);
                 }
             }
@@ -151,6 +193,11 @@ impl Plan {
         }
         plan.slots = slots as usize;
         Some(plan)
+    }
+
+    /// Lanes in which the values the plan was made for were regular.
+    pub fn serves(&self) -> Mask {
+        Mask(self.serves)
     }
 
     /// Size of the matrix.
@@ -171,12 +218,16 @@ impl Plan {
         factors.slots.resize(self.slots, Lanes::ZERO);
     }
 
-    /// Factorises in place.
+    /// Factorises in place. Returns the lanes in which every pivot was a number other than zero:
+    /// only those can be solved.
     #[inline(always)]
-    pub fn factor(&self, factors: &mut Factors) {
+    pub fn factor(&self, factors: &mut Factors) -> Mask {
         let a = &mut factors.slots[..];
+        let mut poison = Lanes::ZERO;
         for step in &self.steps {
             let inverse = 1.0 / a[step.pivot as usize];
+            // Zero times a number is zero unless the number is infinite or none.
+            poison += inverse * 0.0;
             a[step.pivot as usize] = inverse;
             let upper = &self.upper[step.upper.0 as usize..step.upper.1 as usize];
             let mut next = step.updates as usize;
@@ -190,6 +241,7 @@ impl Plan {
                 }
             }
         }
+        poison.abs().lt(Lanes::ONE)
     }
 
     /// Solves `A x = b`; `b` is destroyed, the answer is written to `x` by column.
@@ -243,6 +295,7 @@ impl Factors {
     }
 
     /// The value in a slot.
+    #[inline(always)]
     pub fn value(&self, slot: usize) -> Lanes {
         self.slots[slot]
     }

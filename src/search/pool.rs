@@ -6,56 +6,13 @@ use crate::cells::{CELLS, Cell, Shape, Tech};
 use crate::explore::Work;
 use crate::network::Job;
 use crate::network::corners::climates;
+use crate::network::probes::{Pool, Probes};
 use crate::spec::{Effort, Rail};
 use rayon::prelude::*;
 use std::collections::BTreeMap;
 
 /// Shapes handed to one task: fixed, so that the order of work never depends on the threads.
 const CHUNK: usize = 64;
-
-/// Voltages from the rail at which output legs are probed.
-#[derive(Debug, Clone, PartialEq)]
-pub struct Probes {
-    /// Rising, without repetition.
-    pub volts: Vec<f64>,
-}
-
-impl Probes {
-    /// Probes of a rail: both ends (and the middle) of every output's range, and a ladder for
-    /// feeders up to the largest supply.
-    pub fn of(job: &Job, rail: Rail) -> Probes {
-        let mut volts: Vec<f64> = Vec::new();
-        for output in job.spec.outputs.iter().filter(|o| o.rail == rail) {
-            let (a, b) = (output.range.least.0, output.range.most.0);
-            volts.extend([a, b]);
-            if output.accuracy.is_none() {
-                volts.push((a + b) / 2.0);
-            }
-        }
-        let top = job.spec.supply.most.0;
-        volts.extend([0.15, 0.3, 0.5, 0.7, 0.9].map(|share| share * top));
-        volts.sort_by(f64::total_cmp);
-        volts.dedup();
-        Probes { volts }
-    }
-
-    /// Index of a voltage that was put in.
-    pub fn index(&self, volts: f64) -> usize {
-        self.volts
-            .iter()
-            .position(|&v| v == volts)
-            .expect("every output's range is probed")
-    }
-}
-
-/// Solved shapes of both rails.
-#[derive(Debug, Clone)]
-pub struct Pool {
-    /// Probes per rail, indexed by `rail as usize`.
-    pub probes: [Probes; 2],
-    /// Solved shapes per rail.
-    pub shapes: [Vec<Solved>; 2],
-}
 
 /// The grid of one cell.
 fn grid(tech: &Tech, cell: usize, effort: Effort, headroom: f64) -> Vec<Shape> {

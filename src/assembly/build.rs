@@ -1,0 +1,84 @@
+//! From paper to drawing: a plan's shapes sized, snapped to the manufacturing grid, and joined.
+
+use super::plan::{Ledger, Plan, units_for};
+use crate::cells::{CELLS, Shape};
+use crate::network::{BiasLeg, Family, Job, Leg, Network, Source};
+use crate::spec::Reference;
+
+/// Draws a plan whose member `k` has shape `shapes[k]`. `None` where a shape cannot be sized.
+pub fn build(job: &Job, plan: &Plan, shapes: &[Shape]) -> Option<Network> {
+    let mut families: Vec<Family> = Vec::with_capacity(plan.members.len());
+    for (member, shape) in plan.members.iter().zip(shapes) {
+        let tech = job.tech(member.rail);
+        let shape = shape.snapped(&tech);
+        let unit_current = member.current / f64::from(member.units);
+        let unit = CELLS[shape.cell]
+            .unit(&tech, &shape, unit_current)?
+            .snapped(&tech);
+        let source = |parent: Option<usize>, current: f64| match parent {
+            None => Source::Reference,
+            Some(parent) => {
+                let from = &plan.members[parent];
+                let unit = from.current / f64::from(from.units);
+                Source::Family {
+                    parent,
+                    units: units_for(current, unit).0,
+                }
+            }
+        };
+        let least_width = tech.mosfet().width.least.0;
+        let bias = member.bias.and_then(|(current, parent)| {
+            let size = unit.bias_size(current, least_width)?.snapped(&tech);
+            Some(BiasLeg {
+                feed: source(parent, current),
+                current,
+                size,
+            })
+        });
+        families.push(Family {
+            rail: member.rail,
+            shape,
+            unit,
+            input_units: member.units,
+            input_current: member.current,
+            feed: source(member.parent, member.current),
+            bias,
+        });
+    }
+    let legs = plan
+        .legs
+        .iter()
+        .zip(&job.spec.outputs)
+        .map(|(&family, output)| {
+            let unit = families[family].unit_current();
+            Leg {
+                family,
+                units: units_for(job.spec.target(output).0, unit).0,
+            }
+        })
+        .collect();
+    let reference_resistor = match job.spec.reference {
+        Reference::Current { .. } => None,
+        Reference::Resistor { current } => {
+            let supply = crate::network::corners::nominal_supply(job);
+            Some((supply - families[0].unit.expected.input).max(0.05) / current.0)
+        }
+    };
+    Some(Network {
+        families,
+        legs,
+        reference_resistor,
+    })
+}
+
+/// Shapes of a plan's members as the pool has them.
+pub fn shapes(
+    ledger: &Ledger,
+    plan: &Plan,
+    pool: &[Vec<crate::cells::solved::Solved>; 2],
+) -> Vec<Shape> {
+    plan.members
+        .iter()
+        .map(|m| pool[m.rail as usize][ledger.candidate(m).index].shape)
+        .collect()
+}
