@@ -1,5 +1,7 @@
 //! All integration tests, one module per part of the program.
 
+mod cli;
 mod input;
 mod physics;
+mod project;
 mod report;
