@@ -1,10 +1,26 @@
-//! The pipeline on one screen, and the [`Outcome`] it ends in.
+//! The pipeline on one screen: spec -> pool -> networks -> front -> [`Outcome`].
 
-use crate::circuit::netlist::{Netlist, Node};
-use crate::network::Job;
-use crate::spec::{Rail, Spec};
+mod describe;
+mod outcome;
+
+pub use outcome::*;
+
+use crate::assembly::build;
+use crate::assembly::candidates::{self, Candidate};
+use crate::assembly::columns::Feeds;
+use crate::assembly::improve::{Menu, Scored, Search};
+use crate::assembly::plan::{Ledger, Plan};
+use crate::assembly::polish::{self, Polished};
+use crate::network::bench::Bench;
+use crate::network::probes::Pool;
+use crate::network::{Job, corners, measure};
+use crate::spec::{Effort, Spec};
+use crate::{figures, front, search};
+use rand::SeedableRng;
+use rand_pcg::Pcg64Mcg;
+use rayon::prelude::*;
 use serde::Serialize;
-use std::sync::atomic::AtomicBool;
+use std::sync::atomic::{AtomicBool, AtomicU64, Ordering};
 
 /// Who watches an exploration; progress is an observer, never part of the loop.
 pub trait Observer: Sync {
@@ -47,276 +63,338 @@ pub struct OutputEstimate {
 
 /// Explores a spec. `stop` may be set at any time; the front found so far is then returned.
 pub fn explore(job: &Job, observer: &dyn Observer, stop: &AtomicBool) -> Outcome {
-    let _ = (job, observer, stop);
-    unreachable!("assembled in a later commit")
+    let mut work = Work::default();
+    observer.stage("solving shapes", 0);
+    let pool = search::pool::sweep(job, &mut work, &|done, total| {
+        if done == 0 {
+            observer.stage("solving shapes", total);
+        }
+        observer.advance(done);
+    });
+    let effort = Thoroughness::of(job.spec.search.effort);
+    let mut drawn: Vec<Polished> = Vec::new();
+    for &tighten in &tightenings(job) {
+        drawn.extend(networks(
+            job, &pool, tighten, &effort, observer, stop, &mut work,
+        ));
+    }
+    finish(job, drawn, work, stop)
+}
+
+/// Networks for one scale of the accuracy limits, down a ladder of overhead budgets.
+fn networks(
+    job: &Job,
+    pool: &Pool,
+    tighten: f64,
+    effort: &Thoroughness,
+    observer: &dyn Observer,
+    stop: &AtomicBool,
+    work: &mut Work,
+) -> Vec<Polished> {
+    let wants = candidates::wants(job, tighten);
+    let all = Candidate::all(job, &wants, pool);
+    let limit = overhead_limit(job.spec);
+    let open = Ledger::new(*job, pool, &all, tighten, limit);
+    let feeds = Feeds::of(&open, effort.levels);
+    let menu = Menu::of(&open, &feeds);
+    let seed = job.spec.search.seed;
+    let search = |budget: f64, index: u64, starts: &[Plan], rounds: usize| {
+        let ledger = open.with_budget(budget);
+        let mut rng = Pcg64Mcg::seed_from_u64(seed.wrapping_mul(1_000_003).wrapping_add(index));
+        let mut search = Search::new(&ledger, &menu, stop);
+        let first = search.first();
+        let mut best = search.explore(first, rounds, &mut rng);
+        for start in starts {
+            let start = search.score(start.clone());
+            let next = search.descend(start);
+            if next.score < best.score {
+                best = next;
+            }
+        }
+        best
+    };
+    // The overhead that the least area wants, where nothing bounds it.
+    observer.stage("searching networks", effort.ladder as u64 * 2);
+    let top = search(limit, 0, &[], effort.rounds);
+    let most = limit.min(top.price.overhead);
+    let budgets: Vec<f64> = (0..effort.ladder)
+        .map(|i| most * LADDER_STEP.powi(i as i32))
+        .collect();
+    let done = AtomicU64::new(0);
+    let step = || observer.advance(done.fetch_add(1, Ordering::Relaxed) + 1);
+    let first: Vec<Scored> = budgets
+        .par_iter()
+        .enumerate()
+        .map(|(i, &budget)| {
+            let found = search(
+                budget,
+                1 + i as u64,
+                std::slice::from_ref(&top.plan),
+                effort.rounds,
+            );
+            step();
+            found
+        })
+        .collect();
+    // What one budget found may suit its neighbours too.
+    let plans: Vec<Plan> = first.iter().map(|s| s.plan.clone()).collect();
+    let second: Vec<Scored> = budgets
+        .par_iter()
+        .enumerate()
+        .map(|(i, &budget)| {
+            let ledger = open.with_budget(budget);
+            let mut search = Search::new(&ledger, &menu, stop);
+            let mut best = first[i].clone();
+            for (j, plan) in plans.iter().enumerate() {
+                if j.abs_diff(i) <= 2 && j != i {
+                    let start = search.score(plan.clone());
+                    let next = search.descend(start);
+                    if next.score < best.score {
+                        best = next;
+                    }
+                }
+            }
+            step();
+            best
+        })
+        .collect();
+    observer.stage("polishing and verifying", second.len() as u64);
+    let done = AtomicU64::new(0);
+    let corners = corners::verified(job);
+    let polished: Vec<(Option<Polished>, u64, u64)> = budgets
+        .par_iter()
+        .zip(&second)
+        .enumerate()
+        .map(|(i, (&budget, scored))| {
+            let ledger = open.with_budget(budget);
+            let mut bench = Bench::new(*job, corners.clone());
+            let shapes = build::shapes(&ledger, &scored.plan);
+            let quick = stop.load(Ordering::Relaxed);
+            let how = if quick {
+                polish::Effort {
+                    iterations: 0,
+                    ..effort.polish
+                }
+            } else {
+                effort.polish
+            };
+            let (best, evaluations) = polish::polish(
+                &ledger,
+                &mut bench,
+                &scored.plan,
+                &shapes,
+                tighten,
+                how,
+                seed ^ i as u64,
+            );
+            observer.advance(done.fetch_add(1, Ordering::Relaxed) + 1);
+            (best, evaluations, bench.solutions)
+        })
+        .collect();
+    let mut out = Vec::new();
+    for (best, evaluations, solutions) in polished {
+        work.polish_evaluations += evaluations;
+        work.dc_solutions += solutions;
+        work.networks_verified += u64::from(best.is_some());
+        out.extend(best);
+    }
+    out
+}
+
+/// The front of what was drawn, or the network that comes closest.
+fn finish(job: &Job, drawn: Vec<Polished>, mut work: Work, stop: &AtomicBool) -> Outcome {
+    let corners = corners::verified(job);
+    let mut bench = Bench::new(*job, corners.clone());
+    let mut fine = Bench::new(*job, corners::with_nominal_supply(job));
+    let mut report = |p: &Polished| -> Option<NetworkReport> {
+        let mut measured = p.measured.clone();
+        bench.place(&p.network);
+        measure::headroom(job, &mut bench, &mut measured).ok()?;
+        describe::describe(job, &mut fine, &p.network, &measured, &corners).ok()
+    };
+    let mut fits = Vec::new();
+    let mut nearest: Option<NetworkReport> = None;
+    let breach = |r: &NetworkReport| r.broken.iter().map(breach_of).sum::<f64>();
+    for p in &drawn {
+        let Some(described) = report(p) else { continue };
+        if described.broken.is_empty() {
+            fits.push(described);
+        } else if nearest
+            .as_ref()
+            .is_none_or(|n| breach(&described) < breach(n))
+        {
+            nearest = Some(described);
+        }
+    }
+    work.dc_solutions += bench.solutions + fine.solutions;
+    let trade: Vec<_> = job
+        .spec
+        .trade
+        .iter()
+        .filter_map(|name| figures::named(name))
+        .collect();
+    let points: Vec<Vec<f64>> = fits
+        .iter()
+        .map(|r| {
+            trade
+                .iter()
+                .map(|f| {
+                    let value = r
+                        .figures
+                        .iter()
+                        .find(|v| v.name == f.name())
+                        .map_or(0.0, |v| v.value);
+                    match f.better() {
+                        figures::Better::Less => value,
+                        figures::Better::More => -value,
+                    }
+                })
+                .collect()
+        })
+        .collect();
+    let mut front: Vec<NetworkReport> = front::nondominated(&points)
+        .into_iter()
+        .map(|i| fits[i].clone())
+        .collect();
+    front.sort_by(|a, b| area_of(a).total_cmp(&area_of(b)));
+    for (i, network) in front.iter_mut().enumerate() {
+        network.rank = i + 1;
+    }
+    let status = if front.is_empty() {
+        let broken = nearest
+            .as_ref()
+            .map(|n| n.broken.clone())
+            .unwrap_or_default();
+        Status::NothingFits { broken }
+    } else if stop.load(Ordering::Relaxed) {
+        Status::Interrupted
+    } else {
+        Status::Found
+    };
+    let nearest = if front.is_empty() {
+        nearest.map(Box::new)
+    } else {
+        None
+    };
+    Outcome {
+        spec: job.spec.clone(),
+        card_title: job.card.title.clone(),
+        status,
+        front,
+        nearest,
+        work,
+    }
+}
+
+fn area_of(report: &NetworkReport) -> f64 {
+    report
+        .figures
+        .iter()
+        .find(|f| f.name == "area")
+        .map_or(f64::INFINITY, |f| f.value)
+}
+
+/// How far a broken limit is exceeded, as a share of it.
+fn breach_of(b: &Broken) -> f64 {
+    if b.value > b.limit {
+        b.value / b.limit - 1.0
+    } else {
+        b.limit / b.value.max(1e-30) - 1.0
+    }
+}
+
+/// Largest overhead current the limits allow, A.
+fn overhead_limit(spec: &Spec) -> f64 {
+    let by_current = spec.limits.overhead_current.map_or(f64::INFINITY, |l| l.0);
+    let by_power = spec
+        .limits
+        .power
+        .map_or(f64::INFINITY, |l| l.0 / spec.supply.most.0);
+    by_current.min(by_power)
+}
+
+/// Scales of the accuracy limits to look at: one, or several where accuracy is traded.
+fn tightenings(job: &Job) -> Vec<f64> {
+    let traded = |name: &str| job.spec.trade.iter().any(|t| t == name);
+    if traded("current_error") || traded("error_share") {
+        vec![1.0, 0.85, 0.7, 0.55]
+    } else {
+        vec![1.0]
+    }
+}
+
+/// Next rung of the budget ladder.
+const LADDER_STEP: f64 = 0.87;
+
+/// Numbers behind a search effort.
+struct Thoroughness {
+    /// Rungs of the budget ladder.
+    ladder: usize,
+    /// Restarts of the local search per rung.
+    rounds: usize,
+    /// Levels of collected variance in the master problem.
+    levels: usize,
+    polish: polish::Effort,
+}
+
+impl Thoroughness {
+    fn of(effort: Effort) -> Thoroughness {
+        let polish = |rounds, iterations, swarm| polish::Effort {
+            rounds,
+            iterations,
+            swarm,
+        };
+        match effort {
+            Effort::Quick => Thoroughness {
+                ladder: 6,
+                rounds: 1,
+                levels: 5,
+                polish: polish(3, 25, (0, 0)),
+            },
+            Effort::Normal => Thoroughness {
+                ladder: 12,
+                rounds: 4,
+                levels: 6,
+                polish: polish(4, 40, (10, 12)),
+            },
+            Effort::Thorough => Thoroughness {
+                ladder: 20,
+                rounds: 20,
+                levels: 8,
+                polish: polish(6, 80, (20, 30)),
+            },
+        }
+    }
 }
 
 /// A first look at a spec, in well under a second.
 pub fn estimate(job: &Job) -> Estimate {
-    let _ = job;
-    unreachable!("assembled in a later commit")
-}
-
-/// Everything a report needs: built once, rendered by any format. No wall-clock time in it, so
-/// that equal runs give equal bytes.
-#[derive(Debug, Clone)]
-pub struct Outcome {
-    /// The spec as understood.
-    pub spec: Spec,
-    /// Title of the process card.
-    pub card_title: String,
-    /// How it ended.
-    pub status: Status,
-    /// The front, ranked: first the least area.
-    pub front: Vec<NetworkReport>,
-    /// When nothing fits: the network that comes closest.
-    pub nearest: Option<Box<NetworkReport>>,
-    /// What was done.
-    pub work: Work,
-}
-
-/// How an exploration ended.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub enum Status {
-    /// A front was found; every network on it meets the spec at every corner.
-    Found,
-    /// Stopped early; the front holds what was found so far.
-    Interrupted,
-    /// No network meets the spec.
-    NothingFits {
-        /// Limits the nearest network breaks, worst first.
-        broken: Vec<Broken>,
-    },
-}
-
-/// A limit that a network breaks.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct Broken {
-    /// Figure (`area`, `overhead_current`, `power`, `current_error`, `headroom`,
-    /// `output_resistance`, `reference_voltage`).
-    pub figure: String,
-    /// Output it belongs to, if any.
-    pub output: Option<String>,
-    /// Limit, SI unit of the figure (fractions for errors).
-    pub limit: f64,
-    /// Value reached, same unit.
-    pub value: f64,
-    /// SI unit symbol: "m2", "A", "W", "1", "V", "Ohm".
-    pub unit: String,
-    /// Corner at which it is worst, if one matters.
-    pub corner: Option<String>,
-}
-
-/// Counters of the work done; all independent of time and threads.
-#[derive(Debug, Clone, PartialEq, Default, Serialize)]
-pub struct Work {
-    /// Family shapes in the sweep.
-    pub shapes: u64,
-    /// Of these, excluded by closed forms before any solution.
-    pub screened_out: u64,
-    /// Of these, solved at every corner.
-    pub solved: u64,
-    /// DC solutions made (one per corner and circuit).
-    pub dc_solutions: u64,
-    /// Newton failures, by reason; a failed candidate is counted here and nowhere used.
-    pub not_converged: Vec<(String, u64)>,
-    /// Column-generation rounds.
-    pub rounds: u64,
-    /// Columns priced in.
-    pub columns: u64,
-    /// MILPs solved to proven optimality over their columns.
-    pub milps_proved: u64,
-    /// MILPs stopped at their limit.
-    pub milps_stopped: u64,
-    /// Evaluations spent polishing.
-    pub polish_evaluations: u64,
-    /// Whole networks verified as one circuit.
-    pub networks_verified: u64,
-}
-
-/// One network, with all that a page, a table or a deck shows of it.
-#[derive(Debug, Clone)]
-pub struct NetworkReport {
-    /// 1 is the least area.
-    pub rank: usize,
-    /// Figures of the whole network, in catalogue order.
-    pub figures: Vec<FigureValue>,
-    /// Families, parents before children; the first is the root.
-    pub families: Vec<FamilyReport>,
-    /// Every drawn device.
-    pub devices: Vec<DeviceRow>,
-    /// Every output of the spec, in its order.
-    pub outputs: Vec<OutputReport>,
-    /// The reference pin over all corners, V to ground.
-    pub reference_pin: [f64; 2],
-    /// The network as a netlist, sources excluded, and its ports.
-    pub deck: DeckSource,
-    /// Limits this network breaks (empty on the front).
-    pub broken: Vec<Broken>,
-}
-
-/// One figure of merit of a network.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct FigureValue {
-    /// Name in the catalogue, such as `area` or `overhead_current`.
-    pub name: String,
-    /// SI unit symbol, "1" for a fraction.
-    pub unit: String,
-    /// Worst value over corners, SI.
-    pub value: f64,
-    /// Corner where it is worst, such as "SS 1.62 V -40 degC".
-    pub corner: Option<String>,
-    /// Output where it is worst.
-    pub output: Option<String>,
-}
-
-/// One family of a network.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct FamilyReport {
-    /// Name within the network: n1, n2, ... on the sink rail, p1, p2, ... on the source rail.
-    pub name: String,
-    /// Rail.
-    pub rail: Rail,
-    /// Cell name in the catalogue.
-    pub cell: String,
-    /// Name of the family that feeds it; `None` for the reference.
-    pub fed_by: Option<String>,
-    /// Input current, A.
-    pub input_current: f64,
-    /// Units in the input leg.
-    pub input_units: u32,
-    /// Current of one unit, A.
-    pub unit_current: f64,
-    /// Sum of the areas of its devices, m^2.
-    pub area: f64,
-    /// Names of the outputs it serves.
-    pub outputs: Vec<String>,
-}
-
-/// One drawn device of a network.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct DeviceRow {
-    /// Element name in the deck.
-    pub name: String,
-    /// Family it belongs to.
-    pub family: String,
-    /// What it does: "input mirror", "output cascode", "degeneration resistor", ...
-    pub role: String,
-    /// Output the device's leg serves, if it serves one (the first of a counted output).
-    pub output: Option<String>,
-    /// Deck model name, or "resistor".
-    pub model: String,
-    /// Drawn width of one unit, m.
-    pub width: f64,
-    /// Drawn length of one unit, m.
-    pub length: f64,
-    /// Units in parallel, for all equal outputs together.
-    pub units: u32,
-    /// Resistance of one unit, Ohm (resistors only).
-    pub ohms: Option<f64>,
-    /// Drain current at the nominal corner of all units, A.
-    pub current: f64,
-    /// Inversion coefficient at the nominal corner (transistors under the charge law).
-    pub inversion: Option<f64>,
-    /// |VGS| at the nominal corner, V.
-    pub vgs: Option<f64>,
-    /// |VDS| at the nominal corner, V (the low end of the range for output legs).
-    pub vds: Option<f64>,
-    /// Saturation voltage at the nominal corner, V.
-    pub vdssat: Option<f64>,
-    /// Area of all units, m^2.
-    pub area: f64,
-}
-
-/// One output of the spec in a network.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct OutputReport {
-    /// Name in the spec.
-    pub name: String,
-    /// Rail.
-    pub rail: Rail,
-    /// How many equal ones.
-    pub count: u32,
-    /// Family that serves it.
-    pub family: String,
-    /// Cell of that family.
-    pub cell: String,
-    /// Units in each output leg.
-    pub units: u32,
-    /// Target current, A.
-    pub target: f64,
-    /// Worst current error (systematic + k sigma), fraction.
-    pub error: f64,
-    /// Its limit, if any, fraction.
-    pub error_limit: Option<f64>,
-    /// k.
-    pub sigma: f64,
-    /// Corner of the worst error.
-    pub error_corner: String,
-    /// Parts of the worst error in reporting order, fractions: systematic parts carry their sign
-    /// and sum to the signed systematic error; mismatch parts are k sigma each and add in squares.
-    pub budget: Vec<BudgetPart>,
-    /// Required range, V from the output's own rail.
-    pub range: [f64; 2],
-    /// Least voltage from the rail at which it still meets its error limit at every corner, V.
-    pub headroom: f64,
-    /// `range[0] - headroom`, V.
-    pub headroom_margin: f64,
-    /// Corner of the worst headroom.
-    pub headroom_corner: String,
-    /// Output resistance at the low end of the range, worst corner, Ohm.
-    pub output_resistance: f64,
-    /// Its limit, if any, Ohm.
-    pub output_resistance_limit: Option<f64>,
-    /// Corner of the least output resistance.
-    pub output_resistance_corner: String,
-    /// Output current against the voltage from its own rail.
-    pub curve: OutputCurve,
-}
-
-/// One part of an error budget.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct BudgetPart {
-    /// `threshold_mismatch`, `gain_mismatch`, `resistor_mismatch`, `output_conductance`,
-    /// `ratio_rounding`, `process`, `temperature`, `supply`, `reference`.
-    pub name: String,
-    /// Fraction of the target.
-    pub value: f64,
-    /// True where the part adds in squares (mismatch), false where it adds with its sign.
-    pub random: bool,
-}
-
-/// Output current over the pin's voltage from its own rail.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct OutputCurve {
-    /// Voltages, V, rising.
-    pub volts: Vec<f64>,
-    /// Current at the nominal corner, A.
-    pub nominal: Vec<f64>,
-    /// Least current over all corners (systematic), A.
-    pub least: Vec<f64>,
-    /// Largest current over all corners (systematic), A.
-    pub most: Vec<f64>,
-}
-
-/// A network as a netlist with its ports.
-#[derive(Debug, Clone, PartialEq, Default)]
-pub struct DeckSource {
-    /// Elements of the network without any source.
-    pub netlist: Netlist,
-    /// Supply node.
-    pub supply: Node,
-    /// Reference pins (empty with a resistor reference), one per copy used.
-    pub references: Vec<Node>,
-    /// Output nodes in spec order, one node per output (equal outputs of a count share the row:
-    /// every one of `count` legs is drawn, on nodes `name_1`, `name_2`, ...).
-    pub outputs: Vec<Vec<Node>>,
-    /// Reference current, A; positive flows into the pin.
-    pub reference_current: f64,
-    /// Nominal supply, V.
-    pub nominal_supply: f64,
-    /// Nominal temperature, K.
-    pub nominal_temperature: f64,
-    /// Deck model name of the n-channel and the p-channel device.
-    pub models: [String; 2],
+    let mut work = Work::default();
+    let pool = search::pool::sweep_at(job, Effort::Quick, &mut work, &|_, _| {});
+    let wants = candidates::wants(job, 1.0);
+    let all = Candidate::all(job, &wants, &pool);
+    let ledger = Ledger::new(*job, &pool, &all, 1.0, overhead_limit(job.spec));
+    let outputs = job
+        .spec
+        .outputs
+        .iter()
+        .enumerate()
+        .map(|(k, output)| OutputEstimate {
+            name: output.name.clone(),
+            cells: candidates::cells_for(&all[output.rail as usize], k, &wants[k]),
+        })
+        .collect();
+    let feeds = Feeds::of(&ledger, 5);
+    let menu = Menu::of(&ledger, &feeds);
+    let stop = AtomicBool::new(false);
+    let mut search = Search::new(&ledger, &menu, &stop);
+    let first = search.first();
+    let found = search.descend(first);
+    Estimate {
+        outputs,
+        area: Some(found.price.area),
+        overhead: Some(found.price.overhead),
+        fits: found.price.excess == 0.0
+            && job.spec.limits.area.is_none_or(|l| found.price.area <= l.0),
+    }
 }

@@ -8,6 +8,7 @@ pub mod device;
 pub mod diag;
 pub mod explore;
 pub mod figures;
+pub mod front;
 pub mod network;
 pub mod numeric;
 pub mod process;

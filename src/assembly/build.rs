@@ -72,13 +72,9 @@ pub fn build(job: &Job, plan: &Plan, shapes: &[Shape]) -> Option<Network> {
 }
 
 /// Shapes of a plan's members as the pool has them.
-pub fn shapes(
-    ledger: &Ledger,
-    plan: &Plan,
-    pool: &[Vec<crate::cells::solved::Solved>; 2],
-) -> Vec<Shape> {
+pub fn shapes(ledger: &Ledger, plan: &Plan) -> Vec<Shape> {
     plan.members
         .iter()
-        .map(|m| pool[m.rail as usize][ledger.candidate(m).index].shape)
+        .map(|m| ledger.pool.shapes[m.rail as usize][ledger.candidate(m).index].shape)
         .collect()
 }

@@ -7,7 +7,8 @@ use crate::cells::{CELLS, Size};
 use crate::device;
 use crate::network::Job;
 use crate::network::bench::of;
-use crate::network::probes::Probes;
+use crate::network::measure::PLAIN_FALL;
+use crate::network::probes::{Pool, Probes};
 use crate::process::AreaRule;
 use crate::spec::{AccuracyOf, Output, Rail, Reference};
 
@@ -77,6 +78,8 @@ pub struct Want {
     /// Held to its current although the network makes its own reference: the reference's spread
     /// counts too.
     pub absolute: bool,
+    /// Least output resistance times current, V; 0 where none is asked.
+    pub early: f64,
 }
 
 /// The outputs as the assembly sees them; `tighten` scales every accuracy limit.
@@ -99,6 +102,9 @@ pub fn wants(job: &Job, tighten: f64) -> Vec<Want> {
                     .map_or(f64::INFINITY, |a| a.limit * tighten - tolerance),
                 sigma: o.accuracy.map_or(3.0, |a| a.sigma),
                 absolute: own_reference && of(o) == AccuracyOf::Current,
+                early: o
+                    .output_resistance
+                    .map_or(0.0, |r| r.0 * job.spec.target(o).0),
             }
         })
         .collect()
@@ -106,7 +112,14 @@ pub fn wants(job: &Job, tighten: f64) -> Vec<Want> {
 
 impl Candidate {
     /// Digests a solved shape.
-    pub fn new(job: &Job, rail: Rail, index: usize, solved: &Solved, probes: &Probes) -> Candidate {
+    pub fn new(
+        job: &Job,
+        wants: &[Want],
+        rail: Rail,
+        index: usize,
+        solved: &Solved,
+        probes: &Probes,
+    ) -> Candidate {
         let tech = job.tech(rail);
         let mosfet = tech.mosfet();
         let loss = device::width_loss(mosfet);
@@ -121,7 +134,8 @@ impl Candidate {
             .spec
             .outputs
             .iter()
-            .map(|o| (o.rail == rail).then(|| fit(job, o, &at)).flatten())
+            .zip(wants)
+            .map(|(o, want)| (o.rail == rail).then(|| fit(o, want, &at)).flatten())
             .collect();
         Candidate {
             rail,
@@ -148,6 +162,18 @@ impl Candidate {
                 .map(|&k| (probes.volts[k], solved.probes[k]))
                 .collect(),
         }
+    }
+
+    /// Digests a whole pool.
+    pub fn all(job: &Job, wants: &[Want], pool: &Pool) -> [Vec<Candidate>; 2] {
+        [Rail::Sink, Rail::Source].map(|rail| {
+            let probes = &pool.probes[rail as usize];
+            pool.shapes[rail as usize]
+                .iter()
+                .enumerate()
+                .map(|(k, solved)| Candidate::new(job, wants, rail, k, solved, probes))
+                .collect()
+        })
     }
 
     /// Whether a unit of `unit` ampere can be drawn, with `units` of them in the input leg.
@@ -271,30 +297,48 @@ fn strip_area(rule: &AreaRule, width: f64, length: f64, units: f64) -> f64 {
 }
 
 /// Both ends of an output's range, if a leg of this shape can live there at all.
-fn fit<'p>(job: &Job, output: &Output, at: &impl Fn(f64) -> &'p Probe) -> Option<[End; 2]> {
+fn fit<'p>(output: &Output, want: &Want, at: &impl Fn(f64) -> &'p Probe) -> Option<[End; 2]> {
     let end = |p: &Probe| End {
         error: p.error,
         variance_in: p.variance_in,
         variance_out: p.variance_out,
     };
     let (low, high) = (at(output.range.least.0), at(output.range.most.0));
-    let current = job.spec.target(output).0;
-    if let Some(least) = output.output_resistance
-        && low.early < least.0 * current
-    {
+    if low.early < want.early {
         return None;
     }
-    match output.accuracy {
-        Some(a) => {
-            let worst = low.error[0].abs().max(high.error[1].abs());
-            (worst < a.limit).then_some([end(low), end(high)])
-        }
-        None => {
-            // Within 1 % of the current in the middle of the range: the definition of headroom
-            // where no accuracy is asked.
-            let middle = at((output.range.least.0 + output.range.most.0) / 2.0);
-            let fall = (1.0 + low.error[0]) / (1.0 + middle.error[0]) - 1.0;
-            (fall > -0.01).then_some([end(low), end(high)])
+    if want.limit.is_finite() {
+        let worst = low.error[0].abs().max(high.error[1].abs());
+        return (worst < want.limit).then_some([end(low), end(high)]);
+    }
+    // Within 1 % of the current in the middle of the range: the definition of headroom where no
+    // accuracy is asked.
+    let middle = at((output.range.least.0 + output.range.most.0) / 2.0);
+    let fall = (1.0 + low.error[0]) / (1.0 + middle.error[0]) - 1.0;
+    (fall > -PLAIN_FALL).then_some([end(low), end(high)])
+}
+
+/// Cells that can serve output `k` alone, with the least area of a leg, m^2; cheapest first.
+pub fn cells_for(candidates: &[Candidate], k: usize, want: &Want) -> Vec<(String, f64)> {
+    let mut best: Vec<Option<f64>> = vec![None; CELLS.len()];
+    for c in candidates {
+        let Some(ends) = &c.outputs[k] else { continue };
+        // Alone on a perfect line: its own leg's mismatch is the least it must bear.
+        let bears = ends.iter().all(|e| {
+            let sigma = (e.variance_out / want.current).sqrt();
+            e.error[0].abs().max(e.error[1].abs()) + want.sigma * sigma <= want.limit
+        });
+        if bears && c.drawable(want.current, 1) {
+            let area = c.leg_area(want.current, 1.0);
+            let least = best[c.cell].map_or(area, |b| b.min(area));
+            best[c.cell] = Some(least);
         }
     }
+    let mut list: Vec<(String, f64)> = best
+        .into_iter()
+        .enumerate()
+        .filter_map(|(cell, area)| Some((CELLS[cell].name().to_owned(), area?)))
+        .collect();
+    list.sort_by(|a, b| a.1.total_cmp(&b.1));
+    list
 }

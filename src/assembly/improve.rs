@@ -8,9 +8,11 @@
 //! optima.
 
 use super::candidates::Candidate;
+use super::columns::{Feeds, shortlist};
 use super::plan::{Clerk, Ledger, Member, Plan, Price, Tally};
 use rand::Rng;
 use rand_pcg::Pcg64Mcg;
+use std::sync::atomic::{AtomicBool, Ordering};
 
 /// Units tried for an input leg.
 const UNITS: [u32; 13] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16, 20, 30, 40];
@@ -24,6 +26,50 @@ pub struct Menu {
     pub own: Vec<Vec<usize>>,
     /// Input currents, A.
     pub currents: Vec<f64>,
+    /// Area charged for an excess of one limit by its own size, m^2.
+    pub charge: f64,
+}
+
+impl Menu {
+    /// A menu for a ledger: the candidates that win some contest, and per output a dozen of those
+    /// that can serve it, from the smallest leg to the largest.
+    pub fn of(ledger: &Ledger, feeds: &Feeds) -> Menu {
+        const OWN: usize = 16;
+        let mut shapes = shortlist(ledger, feeds);
+        for (rail, list) in shapes.iter_mut().enumerate() {
+            if list.is_empty() {
+                // Nothing can serve here; the nearest network is still to be named.
+                let n = ledger.candidates[rail].len();
+                list.extend((0..n).step_by(n.div_ceil(64).max(1)));
+            }
+        }
+        let mut charge = 0.0;
+        let own = ledger
+            .wants
+            .iter()
+            .enumerate()
+            .map(|(k, want)| {
+                let rail = want.rail as usize;
+                let mut list: Vec<(f64, usize)> = shapes[rail]
+                    .iter()
+                    .filter(|&&i| ledger.candidates[rail][i].outputs[k].is_some())
+                    .map(|&i| (ledger.candidates[rail][i].leg_area(want.current, 1.0), i))
+                    .collect();
+                list.sort_by(|a, b| a.0.total_cmp(&b.0));
+                charge += want.count * list.get(list.len() / 2).map_or(0.0, |x| x.0);
+                let step = list.len().div_ceil(OWN).max(1);
+                list.into_iter().step_by(step).map(|(_, i)| i).collect()
+            })
+            .collect();
+        // An excess of 1 % costs about a tenth of the whole.
+        let charge = 10.0 * charge.max(1e-10);
+        Menu {
+            shapes,
+            own,
+            currents: feeds.currents.clone(),
+            charge,
+        }
+    }
 }
 
 /// A plan with its score: area with every excess charged.
@@ -43,6 +89,7 @@ pub struct Search<'s, 'a> {
     menu: &'s Menu,
     /// Area charged for an excess of one limit by its own size, m^2.
     charge: f64,
+    stop: &'s AtomicBool,
     clerk: Clerk<'s, 'a>,
     /// Of the plan that changes are tried on.
     base: Tally,
@@ -50,12 +97,13 @@ pub struct Search<'s, 'a> {
 }
 
 impl<'s, 'a> Search<'s, 'a> {
-    /// A search that charges `charge` m^2 for exceeding one limit by 100 %.
-    pub fn new(ledger: &'s Ledger<'a>, menu: &'s Menu, charge: f64) -> Search<'s, 'a> {
+    /// A search over a ledger; it returns early once `stop` is set.
+    pub fn new(ledger: &'s Ledger<'a>, menu: &'s Menu, stop: &'s AtomicBool) -> Search<'s, 'a> {
         Search {
             ledger,
             menu,
-            charge,
+            charge: menu.charge,
+            stop,
             clerk: Clerk::new(ledger),
             base: Tally::new(),
             scratch: Tally::new(),
@@ -160,16 +208,23 @@ impl<'s, 'a> Search<'s, 'a> {
             self.reparent(&mut best);
             self.open(&mut best);
             self.close(&mut best);
-            if best.score >= before * (1.0 - 1e-4) {
+            if best.score >= before * (1.0 - 1e-4) || self.stopped() {
                 return best;
             }
         }
+    }
+
+    fn stopped(&self) -> bool {
+        self.stop.load(Ordering::Relaxed)
     }
 
     /// Iterated local search: `rounds` perturbations of the best plan.
     pub fn explore(&mut self, start: Scored, rounds: usize, rng: &mut Pcg64Mcg) -> Scored {
         let mut best = self.descend(start);
         for _ in 0..rounds {
+            if self.stopped() {
+                break;
+            }
             let shaken = self.shake(&best, rng);
             let next = self.descend(shaken);
             if next.score < best.score {

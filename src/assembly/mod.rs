@@ -9,3 +9,4 @@ pub mod improve;
 pub mod master;
 pub mod milp;
 pub mod plan;
+pub mod polish;

@@ -71,7 +71,7 @@ pub struct Ledger<'a> {
     /// Outputs.
     pub wants: Vec<Want>,
     /// Probes of the low and the high end of each output's range.
-    ends: Vec<[usize; 2]>,
+    pub(super) ends: Vec<[usize; 2]>,
     /// Largest overhead current, A.
     pub budget: f64,
     /// Least and largest voltage the reference pin may have, from the root's rail.
@@ -79,7 +79,7 @@ pub struct Ledger<'a> {
     /// Copies of the reference.
     pub copies: usize,
     /// Factors on a resistor at every climate, for a reference the network makes itself.
-    resistor: Vec<Lanes>,
+    pub(super) resistor: Vec<Lanes>,
 }
 
 /// What has been collected up to the input of a family, per group of climates.
@@ -132,6 +132,13 @@ impl Tally {
             outputs: Vec::new(),
             absolute: [[Lanes::ZERO; GROUPS]; 2],
         }
+    }
+}
+
+impl Tally {
+    /// Error of each output over its limit.
+    pub fn error_shares(&self) -> Vec<f64> {
+        self.outputs.iter().map(|o| o.error_share).collect()
     }
 }
 
@@ -204,10 +211,26 @@ impl<'a> Ledger<'a> {
         }
     }
 
+    /// The same ledger with another budget of overhead current, A.
+    pub fn with_budget(&self, budget: f64) -> Ledger<'a> {
+        Ledger {
+            budget,
+            ..self.clone()
+        }
+    }
+
     /// The candidate of a member.
     #[inline(always)]
     pub fn candidate(&self, member: &Member) -> &'a Candidate {
         &self.candidates[member.rail as usize][member.candidate]
+    }
+
+    /// Least and largest voltage the reference pin may have, V to ground, at any supply.
+    pub fn pin_to_ground(&self) -> [f64; 2] {
+        match self.job.spec.reference {
+            Reference::Current { range, .. } => [range.least.0, range.most.0],
+            Reference::Resistor { .. } => self.pin,
+        }
     }
 
     fn groups(&self) -> usize {

@@ -123,7 +123,7 @@ impl Draw {
     pub fn mos(&mut self, role: &str, ends: [Node; 3], size: Size, units: u32) {
         let [drain, gate, source] = ends;
         let short: String = role.split(' ').filter_map(|w| w.chars().next()).collect();
-        let name = format!("{}_{short}", self.tag);
+        let name = format!("M{}_{short}", self.tag);
         self.mos_origin.push(self.origin(role));
         self.netlist.mos.push(Mos {
             name,
@@ -144,7 +144,7 @@ impl Draw {
     /// A resistor of `units` equal bodies in parallel.
     pub fn resistor(&mut self, role: &str, ends: [Node; 2], body: Body, units: u32) {
         let short: String = role.split(' ').filter_map(|w| w.chars().next()).collect();
-        let name = format!("{}_{short}", self.tag);
+        let name = format!("R{}_{short}", self.tag);
         self.resistor_origin.push(self.origin(role));
         self.netlist.resistors.push(Resistance {
             name,

@@ -29,9 +29,9 @@ const STEP_DONE: f64 = 3e-7;
 const RESIDUAL_DONE: f64 = 1e-9;
 /// Current below which a node's balance is not resolved, A.
 const CURRENT_FLOOR: f64 = 1e-20;
-/// What the rounding of a node's voltage does to its balance: four units in the last place times
-/// the node's conductance must be able to pass. It counts where a device conducts well at next to no
-/// voltage.
+/// What rounding does to a node's balance: four units in the last place of its voltage, and of some UT
+/// in the charges, times the node's conductance must be able to pass. It counts where a device
+/// conducts well at next to no voltage.
 const ROUNDING: f64 = 4.0 * f64::EPSILON / RESIDUAL_DONE;
 /// Newton iterations before a lane counts as stuck.
 const ITERATIONS: u32 = 60;
@@ -378,6 +378,10 @@ impl Circuit {
             state.plan = None;
             self.newton(state, Some(drag));
             best.iterations += state.iterations;
+            // A node that nothing holds stands still under drag: only Newton itself has the last word.
+            state.plan = None;
+            self.newton(state, None);
+            best.iterations += state.iterations;
             for lane in 0..8 {
                 if !best.converged[lane] && state.converged[lane] {
                     for (to, from) in best.volts.iter_mut().zip(&state.volts) {
@@ -588,7 +592,7 @@ impl Work for Newton<'_> {
                 if row != NONE {
                     let r = row as usize;
                     let slope = state.factors.value(plan.slot(circuit.diagonal[r] as usize));
-                    let rounding = (slope * state.volts[node]).abs() * ROUNDING;
+                    let rounding = slope.abs() * (state.volts[node].abs() + 0.1) * ROUNDING;
                     let scale = state.scale[r] + rounding + CURRENT_FLOOR;
                     residual = residual.max(state.f[r].abs() / scale);
                 }

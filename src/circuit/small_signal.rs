@@ -7,6 +7,9 @@ use super::netlist::Node;
 use crate::numeric::dispatch::{Work, widest};
 use crate::numeric::lanes::{Lanes, Mask};
 
+/// Growth of an elimination beyond which its order is made anew: derivatives keep ten digits.
+const GROWTH_MOST: f64 = 1e4;
+
 /// Sensitivities of one pin's current.
 #[derive(Debug, Clone, Default)]
 pub struct Sensitivity {
@@ -28,7 +31,9 @@ impl Circuit {
             circuit: self,
             state,
         });
-        if !sound.or(Mask(state.converged).not()).all() {
+        let growth = self.plan(state).growth(&state.factors);
+        let good = sound.and(growth.lt(Lanes::splat(GROWTH_MOST)));
+        if !good.or(Mask(state.converged).not()).all() {
             self.evaluate_anew(state);
             widest(Factorise {
                 circuit: self,

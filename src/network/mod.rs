@@ -3,10 +3,10 @@
 
 pub mod bench;
 pub mod corners;
-pub mod detail;
 pub mod drawing;
 pub mod measure;
 pub mod probes;
+pub mod work;
 
 use crate::cells::{CELLS, Shape, Size, Tech, Unit};
 use crate::device;

@@ -244,6 +244,15 @@ impl Plan {
         poison.abs().lt(Lanes::ONE)
     }
 
+    /// Largest multiplier of the elimination in each lane. Rounding grows with it: the order is good
+    /// while it stays near the tens that [`Plan::new`] aims for.
+    pub fn growth(&self, factors: &Factors) -> Lanes {
+        let multipliers = self.lower.iter();
+        multipliers.fold(Lanes::ZERO, |most, &(slot, _)| {
+            most.max(factors.slots[slot as usize].abs())
+        })
+    }
+
     /// Solves `A x = b`; `b` is destroyed, the answer is written to `x` by column.
     #[inline(always)]
     pub fn solve(&self, factors: &Factors, b: &mut [Lanes], x: &mut [Lanes]) {

@@ -3,10 +3,10 @@
 
 use crate::cells::solved::{Failure, Solved, Solver};
 use crate::cells::{CELLS, Cell, Shape, Tech};
-use crate::explore::Work;
 use crate::network::Job;
 use crate::network::corners::climates;
 use crate::network::probes::{Pool, Probes};
+use crate::network::work::Work;
 use crate::spec::{Effort, Rail};
 use rayon::prelude::*;
 use std::collections::BTreeMap;
@@ -100,8 +100,18 @@ pub fn could_serve(job: &Job, tech: &Tech, shape: &Shape) -> bool {
     0.5 * cell.least_output(tech, shape) <= highest
 }
 
-/// Sweeps and solves.
+/// Sweeps and solves at the spec's effort. `advance` hears of shapes done and shapes in all.
 pub fn sweep(job: &Job, work: &mut Work, advance: &(dyn Fn(u64, u64) + Sync)) -> Pool {
+    sweep_at(job, job.spec.search.effort, work, advance)
+}
+
+/// Sweeps and solves at an effort.
+pub fn sweep_at(
+    job: &Job,
+    effort: Effort,
+    work: &mut Work,
+    advance: &(dyn Fn(u64, u64) + Sync),
+) -> Pool {
     let climates = climates(job);
     let current = job.spec.reference.current().0;
     let probes = [Rail::Sink, Rail::Source].map(|rail| Probes::of(job, rail));
@@ -119,7 +129,7 @@ pub fn sweep(job: &Job, work: &mut Work, advance: &(dyn Fn(u64, u64) + Sync)) ->
             if !usable(job, *cell) {
                 continue;
             }
-            let shapes = grid(&tech, index, job.spec.search.effort, headroom);
+            let shapes = grid(&tech, index, effort, headroom);
             work.shapes += shapes.len() as u64;
             let kept: Vec<Shape> = shapes
                 .iter()
@@ -133,7 +143,8 @@ pub fn sweep(job: &Job, work: &mut Work, advance: &(dyn Fn(u64, u64) + Sync)) ->
             );
         }
     }
-    let total = tasks.iter().map(|t| t.2.len() as u64).sum();
+    let total: u64 = tasks.iter().map(|t| t.2.len() as u64).sum();
+    advance(0, total);
     let done = std::sync::atomic::AtomicU64::new(0);
     let results: Vec<(Vec<Result<Solved, Failure>>, u64)> = tasks
         .par_iter()

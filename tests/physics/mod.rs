@@ -3,7 +3,9 @@
 mod convergence;
 mod devices;
 mod draft;
+mod golden;
 mod mirrors;
+mod networks;
 mod numeric;
 mod support;
 mod textbook;
