@@ -1,5 +1,8 @@
 //! Arbitrary bytes as a spec, as a card and as a quantity: nothing panics, every fault has a place
 //! inside the text, and nothing that is shown can steer a terminal.
+//!
+//! `cargo +nightly fuzz run --fuzz-dir tests/fuzz spec_and_card`; the files under `specs/` make good
+//! seeds.
 #![no_main]
 
 use biasloom::diag::Diagnostics;
