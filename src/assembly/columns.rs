@@ -91,12 +91,11 @@ impl Feeds {
         }
         let errors = vec![
             0.0,
-            0.12 * least.sqrt() * 3.0,
-            0.35 * least.sqrt() * 3.0,
-            0.25 * most.sqrt() * 3.0,
+            0.2 * least.sqrt() * 3.0,
+            0.25 * most.max(least).sqrt() * 3.0,
         ];
         let supply = ledger.job.spec.supply.least.0;
-        let inputs = [0.45, 0.65, 0.85].map(|s| s * supply).to_vec();
+        let inputs = [0.5, 0.8].map(|s| s * supply).to_vec();
         Feeds {
             currents,
             variances,
