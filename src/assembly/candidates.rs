@@ -318,6 +318,9 @@ fn fit<'p>(output: &Output, want: &Want, at: &impl Fn(f64) -> &'p Probe) -> Opti
     (fall > -PLAIN_FALL).then_some([end(low), end(high)])
 }
 
+/// Most units of a leg in a first estimate.
+const UNITS_ALONE: u32 = 40;
+
 /// Cells that can serve output `k` alone, with the least area of a leg, m^2; cheapest first.
 pub fn cells_for(candidates: &[Candidate], k: usize, want: &Want) -> Vec<(String, f64)> {
     let mut best: Vec<Option<f64>> = vec![None; CELLS.len()];
@@ -328,8 +331,11 @@ pub fn cells_for(candidates: &[Candidate], k: usize, want: &Want) -> Vec<(String
             let sigma = (e.variance_out / want.current).sqrt();
             e.error[0].abs().max(e.error[1].abs()) + want.sigma * sigma <= want.limit
         });
-        if bears && c.drawable(want.current, 1) {
-            let area = c.leg_area(want.current, 1.0);
+        // Large currents take several units, however wide one may be.
+        let units = (1..=UNITS_ALONE).find(|&n| c.drawable(want.current / f64::from(n), n));
+        if let (true, Some(n)) = (bears, units) {
+            let n = f64::from(n);
+            let area = c.leg_area(want.current / n, n);
             let least = best[c.cell].map_or(area, |b| b.min(area));
             best[c.cell] = Some(least);
         }

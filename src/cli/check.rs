@@ -14,8 +14,8 @@ use std::path::PathBuf;
 /// Read a spec back and say at once whether it looks feasible.
 ///
 /// Shows every fault of the spec and of its process card; without faults, the requirements as
-/// understood with every default spelt out, and which cells could serve each output by closed
-/// forms. Ends with 1 where an output has no cell at all.
+/// understood with every default spelt out, and which cells could serve each output in a coarse
+/// sweep. Ends with 1 where an output has no cell at all.
 #[derive(Debug, Args)]
 #[command(after_help = "Example: biasloom check specs/tern.yaml")]
 pub struct Check {
@@ -125,21 +125,12 @@ fn limits(spec: &Spec) -> String {
     .join(", ")
 }
 
-/// One row per output. A narrow terminal gets the cells on a line of their own.
+/// One row per output, and below it what is asked of it and which cells can serve it.
 fn requirements(spec: &Spec, estimate: &Estimate, width: usize) -> String {
-    let header = [
-        "output",
-        "kind",
-        "number",
-        "current",
-        "pin from its rail",
-        "error at most",
-        "resistance at least",
-        "cells",
-    ];
-    let right = [false, false, true, false, false, false, true, false];
+    let header = ["output", "kind", "number", "current", "pin from its rail"];
+    let right = [false, false, true, false, false];
     let mut rows = vec![header.map(str::to_owned).to_vec()];
-    for (output, found) in spec.outputs.iter().zip(&estimate.outputs) {
+    for output in &spec.outputs {
         let range = &output.range;
         rows.push(vec![
             output.name.clone(),
@@ -151,35 +142,32 @@ fn requirements(spec: &Spec, estimate: &Estimate, width: usize) -> String {
                 format::volts_number(range.least.0),
                 format::volts(range.most.0)
             ),
-            words::accuracy(output),
-            output
-                .output_resistance
-                .map_or("not limited".to_owned(), |ohms| {
-                    format::engineering(ohms.0, "Ohm")
-                }),
-            cells(found),
         ]);
     }
-    let wide = devices::columns(&rows, None, &right);
-    if wide.lines().all(|line| line.chars().count() <= width) {
-        return wide;
-    }
-    let last = header.len() - 1;
-    let narrow: Vec<Vec<String>> = rows.iter().map(|row| row[..last].to_vec()).collect();
-    let mut text = String::new();
-    for (index, line) in devices::columns(&narrow, None, &right[..last])
-        .lines()
-        .enumerate()
-    {
-        text.push_str(line);
-        text.push('\n');
-        // The header and its rule come first.
-        if let Some(row) = index.checked_sub(1).and_then(|index| rows.get(index))
-            && index > 1
-        {
-            for line in words::wrap(&format!("cells: {}", row[last]), width.max(40) - 6) {
-                text.push_str(&format!("      {line}\n"));
-            }
+    let table = devices::columns(&rows, None, &right);
+    let mut lines = table.lines();
+    // The header and its rule come first.
+    let mut text: String = lines
+        .by_ref()
+        .take(2)
+        .map(|line| format!("{line}\n"))
+        .collect();
+    let asked = spec.outputs.iter().zip(&estimate.outputs);
+    for (line, (output, found)) in lines.zip(asked) {
+        text.push_str(&format!("{line}\n"));
+        let resistance = output.output_resistance.map_or(String::new(), |ohms| {
+            format!(
+                "; resistance at least {}",
+                format::engineering(ohms.0, "Ohm")
+            )
+        });
+        let detail = format!(
+            "error {}{resistance}; {}",
+            words::accuracy(output),
+            cells(found)
+        );
+        for line in words::wrap(&detail, width.max(40) - 6) {
+            text.push_str(&format!("      {line}\n"));
         }
     }
     text
@@ -187,15 +175,13 @@ fn requirements(spec: &Spec, estimate: &Estimate, width: usize) -> String {
 
 /// Cells that can serve an output, cheapest first.
 fn cells(output: &OutputEstimate) -> String {
-    if output.cells.is_empty() {
-        return "none".to_owned();
+    match output.cells.first() {
+        None => "no cell".to_owned(),
+        Some((_, least)) => {
+            let names: Vec<&str> = output.cells.iter().map(|(name, _)| name.as_str()).collect();
+            format!("cells from {}: {}", format::area(*least), names.join(", "))
+        }
     }
-    let cells: Vec<String> = output
-        .cells
-        .iter()
-        .map(|(name, area)| format!("{} {}", words::label(name), format::area(*area)))
-        .collect();
-    cells.join(", ")
 }
 
 fn first_look(estimate: &Estimate, width: usize) -> String {
@@ -206,8 +192,8 @@ fn first_look(estimate: &Estimate, width: usize) -> String {
         .map(|output| output.name.as_str())
         .collect();
     let mut lines = vec![
-        "First estimate, by closed forms; nothing is solved yet. The areas above are the least of \
-         one leg."
+        "A first estimate from a coarse sweep: single cells were solved, no network. An area \
+         is the least of one leg."
             .to_owned(),
     ];
     if !hopeless.is_empty() {

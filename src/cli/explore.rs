@@ -4,13 +4,15 @@ use super::Ended;
 use super::input::{self, Input};
 use super::progress::Progress;
 use super::shell::Shell;
-use crate::diag::{Diagnostic, Diagnostics};
+use crate::diag::{Diagnostic, Diagnostics, closest, quote};
 use crate::explore::{self, Observer, Outcome, Silent, Status};
 use crate::network::Job;
 use crate::report::{self, FORMATS, Files, Format, terminal, words, write};
 use crate::spec::Effort;
-use clap::builder::PossibleValuesParser;
+use clap::builder::{PossibleValue, TypedValueParser};
+use clap::error::ErrorKind;
 use clap::{Args, ValueEnum};
+use std::ffi::OsStr;
 use std::num::NonZeroUsize;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
@@ -30,7 +32,7 @@ pub struct Explore {
     #[arg(long, value_name = "FOLDER")]
     out: Option<PathBuf>,
     /// What to write, separated by commas; everything if left out.
-    #[arg(long, value_name = "NAME,...", value_delimiter = ',', value_parser = names())]
+    #[arg(long, value_name = "NAME,...", value_delimiter = ',', value_parser = FormatName)]
     format: Vec<String>,
     /// How hard to look; what the spec says if left out.
     #[arg(long)]
@@ -64,9 +66,36 @@ impl From<HowHard> for Effort {
     }
 }
 
-/// Names of the formats; an unknown one is answered with the closest.
-fn names() -> PossibleValuesParser {
-    PossibleValuesParser::new(FORMATS.iter().map(|format| format.name))
+/// Reads the name of a format; an unknown one is answered with the closest.
+#[derive(Clone)]
+struct FormatName;
+
+impl TypedValueParser for FormatName {
+    type Value = String;
+
+    fn parse_ref(
+        &self,
+        _: &clap::Command,
+        _: Option<&clap::Arg>,
+        value: &OsStr,
+    ) -> Result<String, clap::Error> {
+        let given = value.to_string_lossy();
+        let known = || FORMATS.iter().map(|format| format.name);
+        if let Some(name) = known().find(|name| *name == given) {
+            return Ok(name.to_owned());
+        }
+        let hint = match closest(&given, known()) {
+            Some(meant) => format!("did you mean \"{meant}\"?"),
+            None => format!("the formats are {}", known().collect::<Vec<_>>().join(", ")),
+        };
+        let message = format!("unknown format {}\n  hint: {hint}\n", quote(&given));
+        Err(clap::Error::raw(ErrorKind::InvalidValue, message))
+    }
+
+    fn possible_values(&self) -> Option<Box<dyn Iterator<Item = PossibleValue> + '_>> {
+        let values = FORMATS.iter().map(|format| PossibleValue::new(format.name));
+        Some(Box::new(values))
+    }
 }
 
 impl Explore {

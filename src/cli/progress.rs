@@ -1,14 +1,17 @@
 //! Progress on the terminal: one bar per stage, with the time that remains.
 
 use crate::explore::Observer;
-use indicatif::{MultiProgress, ProgressBar, ProgressFinish, ProgressStyle};
-use std::sync::Mutex;
+use indicatif::{MultiProgress, ProgressBar, ProgressStyle};
+use std::sync::atomic::{AtomicUsize, Ordering};
+use std::sync::{Mutex, MutexGuard, PoisonError};
 use std::time::Duration;
 
-/// An observer that draws a bar for each stage below those already done.
+/// An observer that draws a bar for each stage. A stage that comes again takes its bar again.
 pub struct Progress {
     bars: MultiProgress,
-    present: Mutex<Option<ProgressBar>>,
+    stages: Mutex<Vec<(&'static str, ProgressBar)>>,
+    /// Index of the present stage.
+    present: AtomicUsize,
 }
 
 impl Progress {
@@ -16,21 +19,20 @@ impl Progress {
     pub fn new(bars: MultiProgress) -> Progress {
         Progress {
             bars,
-            present: Mutex::new(None),
+            stages: Mutex::new(Vec::new()),
+            present: AtomicUsize::new(0),
         }
     }
 
-    fn present(&self) -> std::sync::MutexGuard<'_, Option<ProgressBar>> {
+    fn stages(&self) -> MutexGuard<'_, Vec<(&'static str, ProgressBar)>> {
         // A thread that panicked while drawing leaves nothing half done.
-        self.present
-            .lock()
-            .unwrap_or_else(std::sync::PoisonError::into_inner)
+        self.stages.lock().unwrap_or_else(PoisonError::into_inner)
     }
 
-    /// The last stage is done.
+    /// The last stage is done; the bars stay as they are.
     pub fn finish(&self) {
-        if let Some(bar) = self.present().take() {
-            bar.finish_using_style();
+        for (_, bar) in self.stages().iter() {
+            bar.abandon();
         }
     }
 }
@@ -38,34 +40,43 @@ impl Progress {
 /// A bar while a stage runs; a stage of unknown length shows what is done instead.
 fn style(known: bool) -> ProgressStyle {
     let template = if known {
-        "{msg:<28!} {wide_bar:.green} {percent:>3} %  {elapsed:>4} gone, {eta:>4} left"
+        "{msg:<24!} {bar:30} {percent:>3} %  {elapsed:>4} gone, {eta:>4} left"
     } else {
-        "{msg:<28!} {spinner} {human_pos} done  {elapsed:>4} gone"
+        "{msg:<24!} {human_pos} done  {elapsed:>4} gone"
     };
     ProgressStyle::with_template(template)
         .unwrap_or_else(|_| ProgressStyle::default_bar())
-        .progress_chars("=>.")
+        .progress_chars("\u{2501}\u{2578}\u{2500}")
 }
 
 impl Observer for Progress {
     fn stage(&self, name: &'static str, steps: u64) {
-        self.finish();
-        let bar = if steps == 0 {
-            ProgressBar::new_spinner()
-        } else {
-            ProgressBar::new(steps)
+        let mut stages = self.stages();
+        if let Some((_, bar)) = stages.get(self.present.load(Ordering::Relaxed)) {
+            bar.abandon();
+        }
+        let index = match stages.iter().position(|(known, _)| *known == name) {
+            Some(index) => index,
+            None => {
+                let bar = self.bars.add(ProgressBar::no_length().with_message(name));
+                stages.push((name, bar));
+                stages.len() - 1
+            }
         };
-        let bar = self.bars.add(
-            bar.with_style(style(steps > 0))
-                .with_message(name)
-                .with_finish(ProgressFinish::AndLeave),
-        );
+        self.present.store(index, Ordering::Relaxed);
+        let (_, bar) = &stages[index];
+        bar.reset();
+        bar.set_style(style(steps > 0));
+        if steps > 0 {
+            bar.set_length(steps);
+        } else {
+            bar.unset_length();
+        }
         bar.enable_steady_tick(Duration::from_millis(250));
-        *self.present() = Some(bar);
     }
 
     fn advance(&self, done: u64) {
-        if let Some(bar) = &*self.present() {
+        if let Some((_, bar)) = self.stages().get(self.present.load(Ordering::Relaxed)) {
             bar.set_position(done);
         }
     }

@@ -25,45 +25,42 @@ fn acceptable(expression: &str) -> bool {
         .replace(')', " ) ");
     let words: Vec<&str> = spaced.split_whitespace().collect();
     let mut rest = words.as_slice();
-    let met = either(&mut rest);
-    met && rest.is_empty()
+    either(&mut rest) == Some(true) && rest.is_empty()
 }
 
-fn either(words: &mut &[&str]) -> bool {
-    let mut met = both(words);
+/// `None` where the expression is none.
+fn either(words: &mut &[&str]) -> Option<bool> {
+    let mut met = both(words)?;
     while let Some(rest) = words.strip_prefix(&["OR"]) {
         *words = rest;
-        met |= both(words);
+        met |= both(words)?;
     }
-    met
+    Some(met)
 }
 
-fn both(words: &mut &[&str]) -> bool {
-    let mut met = one(words);
+fn both(words: &mut &[&str]) -> Option<bool> {
+    let mut met = one(words)?;
     while let Some(rest) = words.strip_prefix(&["AND"]) {
         *words = rest;
-        met &= one(words);
+        met &= one(words)?;
     }
-    met
+    Some(met)
 }
 
-fn one(words: &mut &[&str]) -> bool {
-    let Some((first, rest)) = words.split_first() else {
-        return false;
-    };
+fn one(words: &mut &[&str]) -> Option<bool> {
+    let (first, rest) = words.split_first()?;
     *words = rest;
     if *first == "(" {
         let met = either(words);
-        let closed = words.strip_prefix(&[")"]);
-        *words = closed.unwrap_or(&[]);
-        return met && closed.is_some();
+        *words = words.strip_prefix(&[")"])?;
+        return met;
     }
     if let ["WITH", _exception, rest @ ..] = words {
         // An exception only adds permissions, but it is not among those looked through.
         *words = rest;
-        return false;
+        return Some(false);
     }
-    ALLOWED.contains(first)
+    Some(ALLOWED.contains(first))
 }
 
 #[test]
