@@ -196,6 +196,26 @@ impl Candidate {
         wide_enough && resistor
     }
 
+    /// What [`Candidate::drawable`] asks, as `ln(value / limit)`: at most 0 where it is kept.
+    pub fn drawing_limits(&self, unit: f64, units: u32) -> Vec<f64> {
+        let mut out = Vec::new();
+        for s in self.strips.iter().flatten() {
+            let width = s.width * unit + self.width_loss;
+            out.push((self.width_limits[0] / width).ln());
+            out.push((width / self.width_limits[1]).ln());
+        }
+        if let (Some(volts), Some(card)) = (self.resistor, &self.resistor_card) {
+            let share = if self.resistor_in_input {
+                f64::from(units)
+            } else {
+                1.0
+            };
+            let ohms = volts / (unit * share);
+            out.push((card.squares_min * card.sheet / ohms).ln());
+        }
+        out
+    }
+
     /// Area per ampere without any border, m^2/A: less than any drawn leg takes.
     pub fn density(&self) -> f64 {
         self.strips

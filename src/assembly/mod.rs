@@ -5,8 +5,10 @@
 pub mod build;
 pub mod candidates;
 pub mod columns;
+mod desk;
 pub mod improve;
 pub mod master;
 pub mod milp;
 pub mod plan;
 pub mod polish;
+mod slp;

@@ -120,6 +120,8 @@ struct Share {
     overhead: f64,
     excess: f64,
     error_share: f64,
+    /// Of an output: error over limit at the low and the high end of its range.
+    ends: [f64; 2],
     references: usize,
 }
 
@@ -136,9 +138,9 @@ impl Tally {
 }
 
 impl Tally {
-    /// Error of each output over its limit.
-    pub fn error_shares(&self) -> Vec<f64> {
-        self.outputs.iter().map(|o| o.error_share).collect()
+    /// Error of each output over its limit, at the low and the high end of its range.
+    pub fn error_shares(&self) -> Vec<[f64; 2]> {
+        self.outputs.iter().map(|o| o.ends).collect()
     }
 }
 
@@ -552,8 +554,8 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
     let solved = &ledger.pool.shapes[c.rail as usize][c.index];
     let line = &tally.lines[leg];
     let (by_input, by_output) = (1.0 / member.current, 1.0 / want.current);
-    let mut worst = Lanes::ZERO;
-    for &probe in &ledger.ends[k] {
+    for (end, &probe) in ledger.ends[k].iter().enumerate() {
+        let mut worst = Lanes::ZERO;
         let copies = solved.at(probe);
         for g in 0..groups {
             let copy = &copies[g];
@@ -568,8 +570,9 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
             }
             worst = worst.max(a.abs().max(b.abs()) + variance.sqrt() * want.sigma);
         }
+        share.ends[end] = worst.largest() / want.limit;
     }
-    share.error_share = worst.largest() / want.limit;
+    share.error_share = share.ends[0].max(share.ends[1]);
     share.excess += (share.error_share - 1.0).max(0.0);
     tally.outputs[k] = share;
 }

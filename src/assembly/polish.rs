@@ -9,23 +9,19 @@
 //! whole circuit the fine one.
 
 use super::build::build;
-use super::candidates::{Candidate, Want};
-use super::plan::{Clerk, Ledger, Plan, Tally};
-use crate::cells::solved::{Solved, Solver};
-use crate::cells::{CELLS, Shape};
+use super::desk::{Desk, shape_of, variables};
+use super::plan::{Ledger, Plan};
+use super::slp;
+use crate::cells::Shape;
 use crate::network::bench::Bench;
-use crate::network::corners;
 use crate::network::measure::{Measured, measure, trim_reference};
-use crate::network::probes::Pool;
 use crate::network::{Job, Network};
-use crate::spec::Rail;
 use argmin::core::{CostFunction, Error, Executor, State};
 use argmin::solver::neldermead::NelderMead;
 use argmin::solver::particleswarm::ParticleSwarm;
 use rand::SeedableRng;
 use rand_pcg::Pcg64Mcg;
 use std::cell::RefCell;
-use std::collections::BTreeMap;
 
 /// How hard to polish.
 #[derive(Debug, Clone, Copy)]
@@ -47,162 +43,6 @@ pub struct Polished {
     pub measured: Measured,
     /// How far its limits are exceeded, as [`excess`] says; 0 meets the spec.
     pub excess: f64,
-}
-
-/// The paper model with shapes of its own: one slot per member.
-struct Desk<'l, 'a> {
-    ledger: &'l Ledger<'a>,
-    plan: Plan,
-    solvers: BTreeMap<(Rail, usize), Solver<'a>>,
-    pool: Pool,
-    candidates: [Vec<Candidate>; 2],
-    /// Slot of each member on its rail.
-    slots: Vec<usize>,
-    wants: Vec<Want>,
-    budget: f64,
-    charge: f64,
-    evaluations: u64,
-}
-
-impl<'l, 'a> Desk<'l, 'a> {
-    /// A desk for a plan; `None` where one of its shapes cannot be solved again.
-    fn new(ledger: &'l Ledger<'a>, plan: &Plan, shapes: &[Shape]) -> Option<Desk<'l, 'a>> {
-        let mut desk = Desk {
-            ledger,
-            plan: plan.clone(),
-            solvers: BTreeMap::new(),
-            pool: Pool {
-                probes: ledger.pool.probes.clone(),
-                shapes: [Vec::new(), Vec::new()],
-            },
-            candidates: [Vec::new(), Vec::new()],
-            slots: Vec::new(),
-            wants: ledger.wants.clone(),
-            budget: ledger.budget,
-            charge: 0.0,
-            evaluations: 0,
-        };
-        for (f, shape) in shapes.iter().enumerate() {
-            let rail = plan.members[f].rail;
-            let solved = desk.solve(rail, shape)?;
-            let slot = desk.pool.shapes[rail as usize].len();
-            desk.candidates[rail as usize].push(desk.digest(rail, slot, &solved));
-            desk.pool.shapes[rail as usize].push(solved);
-            desk.slots.push(slot);
-            desk.plan.members[f].candidate = slot;
-        }
-        Some(desk)
-    }
-
-    fn solve(&mut self, rail: Rail, shape: &Shape) -> Option<Solved> {
-        let job = self.ledger.job;
-        let solver = self.solvers.entry((rail, shape.cell)).or_insert_with(|| {
-            Solver::new(
-                job.tech(rail),
-                shape.cell,
-                job.spec.reference.current().0,
-                &self.pool.probes[rail as usize].volts,
-                &corners::climates(&job),
-            )
-        });
-        solver.solve(&shape.snapped(&job.tech(rail))).ok()
-    }
-
-    fn digest(&self, rail: Rail, slot: usize, solved: &Solved) -> Candidate {
-        let probes = &self.pool.probes[rail as usize];
-        Candidate::new(&self.ledger.job, &self.wants, rail, slot, solved, probes)
-    }
-
-    fn shapes(&self) -> Vec<Shape> {
-        self.plan
-            .members
-            .iter()
-            .zip(&self.slots)
-            .map(|(m, &slot)| self.pool.shapes[m.rail as usize][slot].shape)
-            .collect()
-    }
-
-    /// Puts a shape into a member's slot. False where it cannot be solved.
-    fn put(&mut self, f: usize, shape: &Shape) -> bool {
-        let (rail, slot) = (self.plan.members[f].rail, self.slots[f]);
-        let Some(solved) = self.solve(rail, shape) else {
-            return false;
-        };
-        self.candidates[rail as usize][slot] = self.digest(rail, slot, &solved);
-        self.pool.shapes[rail as usize][slot] = solved;
-        true
-    }
-
-    /// Area with every excess charged, um^2.
-    fn cost(&mut self) -> f64 {
-        self.evaluations += 1;
-        let ledger = Ledger {
-            pool: &self.pool,
-            candidates: &self.candidates,
-            wants: self.wants.clone(),
-            budget: self.budget,
-            ..self.ledger.clone()
-        };
-        let price = Clerk::new(&ledger).price(&self.plan, &mut Tally::new());
-        (price.area + self.charge * price.excess) * 1e12
-    }
-
-    /// Relative error of each output over its limit, on paper.
-    fn shares(&self) -> Vec<f64> {
-        let ledger = Ledger {
-            pool: &self.pool,
-            candidates: &self.candidates,
-            wants: self.wants.clone(),
-            budget: self.budget,
-            ..self.ledger.clone()
-        };
-        let mut tally = Tally::new();
-        Clerk::new(&ledger).price(&self.plan, &mut tally);
-        tally.error_shares()
-    }
-
-    /// Redigests every slot after a change of the wants.
-    fn renew(&mut self) {
-        for f in 0..self.plan.members.len() {
-            let (rail, slot) = (self.plan.members[f].rail, self.slots[f]);
-            let solved = self.pool.shapes[rail as usize][slot].clone();
-            self.candidates[rail as usize][slot] = self.digest(rail, slot, &solved);
-        }
-    }
-}
-
-/// Continuous variables of a shape, each of order one per factor e (lengths, inversions) or per
-/// 100 mV (drops).
-fn variables(shape: &Shape) -> Vec<f64> {
-    let parts = CELLS[shape.cell].parts();
-    let mut x = vec![shape.length.ln(), shape.inversion.ln()];
-    if parts.cascode {
-        x.extend([shape.cascode_length.ln(), shape.cascode_inversion.ln()]);
-    }
-    if parts.drop {
-        x.push(shape.drop * 10.0);
-    }
-    x
-}
-
-fn shape_of(like: &Shape, x: &[f64]) -> Shape {
-    let parts = CELLS[like.cell].parts();
-    let mut shape = *like;
-    let mut x = x.iter().copied();
-    let mut next = || x.next().unwrap_or_default();
-    shape.length = next().exp();
-    shape.inversion = next().exp().clamp(1e-3, 1e3);
-    if parts.cascode {
-        shape.cascode_length = next().exp();
-        shape.cascode_inversion = next().exp().clamp(1e-3, 1e3);
-    }
-    if parts.drop {
-        // A cascode's mirror device may be given a little less than its closed-form saturation
-        // voltage; a degeneration resistor must be there.
-        let least = if parts.cascode { -0.05 } else { 0.01 };
-        shape.drop = (next() / 10.0).max(least);
-    }
-    shape
 }
 
 /// The sizes of one family.
@@ -371,6 +211,7 @@ pub fn polish<'a>(
     let mut best: Option<Polished> = None;
     for round in 0..effort.rounds {
         if round > 0 || effort.iterations > 0 {
+            slp::descend(&mut desk.borrow_mut(), if round == 0 { 0.25 } else { 0.08 });
             let step = [0.15, 0.08, 0.04, 0.03][round.min(3)];
             if effort.swarm.0 > 0 && round == 0 {
                 refine_scales(&desk, effort.swarm, seed);
@@ -426,7 +267,7 @@ fn correct(desk: &mut Desk, measured: &Measured, tighten: f64) {
         let output = &desk.ledger.job.spec.outputs[k];
         if let Some(limit) = worst.limit {
             // On paper the error is share * limit on paper; in the circuit it is worst.error.
-            let paper = shares[k] * desk.wants[k].limit;
+            let paper = shares[k][0].max(shares[k][1]) * desk.wants[k].limit;
             if worst.error > 0.0 && paper > 0.0 {
                 desk.wants[k].limit = (limit * tighten * INSIDE) * (paper / worst.error);
             }

@@ -1,0 +1,248 @@
+//! The paper model of one plan with shapes of its own, one slot per member: where continuous
+//! sizes are tried.
+
+use super::candidates::{Candidate, Want};
+use super::plan::{Clerk, Ledger, Plan, Tally};
+use crate::cells::solved::{Solved, Solver};
+use crate::cells::{CELLS, Shape};
+use crate::network::corners;
+use crate::network::measure::PLAIN_FALL;
+use crate::network::probes::Pool;
+use crate::spec::Rail;
+use std::collections::BTreeMap;
+
+/// The paper model with shapes of its own: one slot per member.
+pub(super) struct Desk<'l, 'a> {
+    pub(super) ledger: &'l Ledger<'a>,
+    pub(super) plan: Plan,
+    solvers: BTreeMap<(Rail, usize), Solver<'a>>,
+    pub(super) pool: Pool,
+    candidates: [Vec<Candidate>; 2],
+    /// Slot of each member on its rail.
+    slots: Vec<usize>,
+    pub(super) wants: Vec<Want>,
+    pub(super) budget: f64,
+    pub(super) charge: f64,
+    /// Shapes are solved with their lengths on the manufacturing grid.
+    pub(super) snap: bool,
+    pub(super) evaluations: u64,
+}
+
+impl<'l, 'a> Desk<'l, 'a> {
+    /// A desk for a plan; `None` where one of its shapes cannot be solved again.
+    pub(super) fn new(
+        ledger: &'l Ledger<'a>,
+        plan: &Plan,
+        shapes: &[Shape],
+    ) -> Option<Desk<'l, 'a>> {
+        let mut desk = Desk {
+            ledger,
+            plan: plan.clone(),
+            solvers: BTreeMap::new(),
+            pool: Pool {
+                probes: ledger.pool.probes.clone(),
+                shapes: [Vec::new(), Vec::new()],
+            },
+            candidates: [Vec::new(), Vec::new()],
+            slots: Vec::new(),
+            wants: ledger.wants.clone(),
+            budget: ledger.budget,
+            charge: 0.0,
+            snap: true,
+            evaluations: 0,
+        };
+        for (f, shape) in shapes.iter().enumerate() {
+            let rail = plan.members[f].rail;
+            let solved = desk.solve(rail, shape)?;
+            let slot = desk.pool.shapes[rail as usize].len();
+            desk.candidates[rail as usize].push(desk.digest(rail, slot, &solved));
+            desk.pool.shapes[rail as usize].push(solved);
+            desk.slots.push(slot);
+            desk.plan.members[f].candidate = slot;
+        }
+        Some(desk)
+    }
+
+    pub(super) fn solve(&mut self, rail: Rail, shape: &Shape) -> Option<Solved> {
+        let job = self.ledger.job;
+        let solver = self.solvers.entry((rail, shape.cell)).or_insert_with(|| {
+            Solver::new(
+                job.tech(rail),
+                shape.cell,
+                job.spec.reference.current().0,
+                &self.pool.probes[rail as usize].volts,
+                &corners::climates(&job),
+            )
+        });
+        let drawn = if self.snap {
+            shape.snapped(&job.tech(rail))
+        } else {
+            *shape
+        };
+        solver.solve(&drawn).ok()
+    }
+
+    pub(super) fn digest(&self, rail: Rail, slot: usize, solved: &Solved) -> Candidate {
+        let probes = &self.pool.probes[rail as usize];
+        Candidate::new(&self.ledger.job, &self.wants, rail, slot, solved, probes)
+    }
+
+    pub(super) fn shapes(&self) -> Vec<Shape> {
+        self.plan
+            .members
+            .iter()
+            .zip(&self.slots)
+            .map(|(m, &slot)| self.pool.shapes[m.rail as usize][slot].shape)
+            .collect()
+    }
+
+    /// Puts a shape into a member's slot. False where it cannot be solved.
+    pub(super) fn put(&mut self, f: usize, shape: &Shape) -> bool {
+        let (rail, slot) = (self.plan.members[f].rail, self.slots[f]);
+        let Some(solved) = self.solve(rail, shape) else {
+            return false;
+        };
+        self.candidates[rail as usize][slot] = self.digest(rail, slot, &solved);
+        self.pool.shapes[rail as usize][slot] = solved;
+        true
+    }
+
+    /// Area with every excess charged, um^2.
+    pub(super) fn cost(&mut self) -> f64 {
+        self.evaluations += 1;
+        let ledger = Ledger {
+            pool: &self.pool,
+            candidates: &self.candidates,
+            wants: self.wants.clone(),
+            budget: self.budget,
+            ..self.ledger.clone()
+        };
+        let price = Clerk::new(&ledger).price(&self.plan, &mut Tally::new());
+        (price.area + self.charge * price.excess) * 1e12
+    }
+
+    /// Relative error of each output over its limit, on paper.
+    pub(super) fn shares(&self) -> Vec<[f64; 2]> {
+        let ledger = Ledger {
+            pool: &self.pool,
+            candidates: &self.candidates,
+            wants: self.wants.clone(),
+            budget: self.budget,
+            ..self.ledger.clone()
+        };
+        let mut tally = Tally::new();
+        Clerk::new(&ledger).price(&self.plan, &mut tally);
+        tally.error_shares()
+    }
+
+    /// Area, um^2, and every limit as `ln(value / limit)`: at most 0 where it is kept. The list has
+    /// the same order at every call.
+    pub(super) fn limits(&mut self) -> (f64, Vec<f64>) {
+        self.evaluations += 1;
+        // Whether a leg can serve at all must not depend on limits here: their excess is the point.
+        let open: Vec<Want> = self
+            .wants
+            .iter()
+            .map(|w| Want {
+                early: 0.0,
+                limit: if w.limit.is_finite() { 1e3 } else { w.limit },
+                ..*w
+            })
+            .collect();
+        let job = &self.ledger.job;
+        let candidates: [Vec<Candidate>; 2] = [Rail::Sink, Rail::Source].map(|rail| {
+            let (shapes, probes) = (
+                &self.pool.shapes[rail as usize],
+                &self.pool.probes[rail as usize],
+            );
+            shapes
+                .iter()
+                .enumerate()
+                .map(|(k, s)| Candidate::new(job, &open, rail, k, s, probes))
+                .collect()
+        });
+        let ledger = Ledger {
+            pool: &self.pool,
+            candidates: &candidates,
+            wants: self.wants.clone(),
+            budget: self.budget,
+            ..self.ledger.clone()
+        };
+        let mut tally = Tally::new();
+        let price = Clerk::new(&ledger).price(&self.plan, &mut tally);
+        let mut limits = Vec::new();
+        for (k, (share, want)) in tally.error_shares().iter().zip(&self.wants).enumerate() {
+            let member = &self.plan.members[self.plan.legs[k]];
+            let solved = &self.pool.shapes[member.rail as usize][member.candidate];
+            let probes = &self.pool.probes[member.rail as usize];
+            let output = &job.spec.outputs[k];
+            let low = &solved.probes[probes.index(output.range.least.0)];
+            if want.limit.is_finite() {
+                limits.extend(share.iter().map(|s| s.max(1e-6).ln()));
+            } else {
+                let middle = (output.range.least.0 + output.range.most.0) / 2.0;
+                let middle = &solved.probes[probes.index(middle)];
+                let fall = 1.0 - (1.0 + low.error[0]) / (1.0 + middle.error[0]);
+                // A share of the permitted fall, smooth through zero.
+                limits.push(fall / PLAIN_FALL - 1.0);
+            }
+            if want.early > 0.0 {
+                limits.push((want.early / low.early.max(1e-9)).ln());
+            }
+        }
+        for member in &self.plan.members {
+            let c = &candidates[member.rail as usize][member.candidate];
+            let unit = member.current / f64::from(member.units);
+            limits.extend(c.drawing_limits(unit, member.units));
+            if member.parent.is_none() {
+                // A tenth of a volt counts like a factor e.
+                limits.push((c.input[1] - self.ledger.pin[1]) * 10.0);
+                limits.push((self.ledger.pin[0] - c.input[0]) * 10.0);
+            }
+        }
+        (price.area * 1e12, limits)
+    }
+
+    /// Redigests every slot after a change of the wants.
+    pub(super) fn renew(&mut self) {
+        for f in 0..self.plan.members.len() {
+            let (rail, slot) = (self.plan.members[f].rail, self.slots[f]);
+            let solved = self.pool.shapes[rail as usize][slot].clone();
+            self.candidates[rail as usize][slot] = self.digest(rail, slot, &solved);
+        }
+    }
+}
+
+/// Continuous variables of a shape, each of order one per factor e (lengths, inversions) or per
+/// 100 mV (drops).
+pub(super) fn variables(shape: &Shape) -> Vec<f64> {
+    let parts = CELLS[shape.cell].parts();
+    let mut x = vec![shape.length.ln(), shape.inversion.ln()];
+    if parts.cascode {
+        x.extend([shape.cascode_length.ln(), shape.cascode_inversion.ln()]);
+    }
+    if parts.drop {
+        x.push(shape.drop * 10.0);
+    }
+    x
+}
+
+pub(super) fn shape_of(like: &Shape, x: &[f64]) -> Shape {
+    let parts = CELLS[like.cell].parts();
+    let mut shape = *like;
+    let mut x = x.iter().copied();
+    let mut next = || x.next().unwrap_or_default();
+    shape.length = next().exp();
+    shape.inversion = next().exp().clamp(1e-3, 1e3);
+    if parts.cascode {
+        shape.cascode_length = next().exp();
+        shape.cascode_inversion = next().exp().clamp(1e-3, 1e3);
+    }
+    if parts.drop {
+        // A cascode's mirror device may be given a little less than its closed-form saturation
+        // voltage; a degeneration resistor must be there.
+        let least = if parts.cascode { -0.05 } else { 0.01 };
+        shape.drop = (next() / 10.0).max(least);
+    }
+    shape
+}
