@@ -65,12 +65,13 @@ pub struct OutputEstimate {
 pub fn explore(job: &Job, observer: &dyn Observer, stop: &AtomicBool) -> Outcome {
     let mut work = Work::default();
     observer.stage("solving shapes", 0);
-    let pool = search::pool::sweep(job, &mut work, &|done, total| {
+    let progress = |done, total| {
         if done == 0 {
             observer.stage("solving shapes", total);
         }
         observer.advance(done);
-    });
+    };
+    let pool = search::pool::sweep(job, &mut work, &progress, stop);
     let effort = Thoroughness::of(job.spec.search.effort);
     let mut drawn: Vec<Polished> = Vec::new();
     for &tighten in &tightenings(job) {
@@ -370,7 +371,8 @@ impl Thoroughness {
 /// A first look at a spec, in well under a second.
 pub fn estimate(job: &Job) -> Estimate {
     let mut work = Work::default();
-    let pool = search::pool::sweep_at(job, Effort::Quick, &mut work, &|_, _| {});
+    let stop = AtomicBool::new(false);
+    let pool = search::pool::sweep_at(job, Effort::Quick, &mut work, &|_, _| {}, &stop);
     let wants = candidates::wants(job, 1.0);
     let all = Candidate::all(job, &wants, &pool);
     let ledger = Ledger::new(*job, &pool, &all, 1.0, overhead_limit(job.spec));
@@ -386,7 +388,6 @@ pub fn estimate(job: &Job) -> Estimate {
         .collect();
     let feeds = Feeds::of(&ledger, 5);
     let menu = Menu::of(&ledger, &feeds);
-    let stop = AtomicBool::new(false);
     let mut search = Search::new(&ledger, &menu, &stop);
     let first = search.first();
     let found = search.descend(first);

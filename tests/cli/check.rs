@@ -2,7 +2,6 @@
 
 use super::{SMALL, project, run};
 use std::fs;
-use std::time::Instant;
 
 #[test]
 fn reads_a_spec_back_with_every_default_spelt_out() {
@@ -38,15 +37,13 @@ fn reads_a_spec_back_with_every_default_spelt_out() {
     );
 }
 
-/// Every output of every shipped spec has a row, and a cell if it is meant to have one, soon.
+/// Every output of every shipped spec has a row, and a cell if it is meant to have one.
 #[test]
 fn every_shipped_spec_has_a_cell_for_every_output() {
     let folder = tempfile::tempdir().unwrap();
     for (stem, text) in super::specs::shipped() {
         let path = project(&format!("specs/{stem}.yaml"));
-        let start = Instant::now();
         let (code, stdout, stderr) = run(folder.path(), &["check", &path]);
-        let elapsed = start.elapsed().as_secs_f64();
         // Half a per cent with 0.2 V of headroom is out of reach on purpose.
         let hopeless = i32::from(stem == "impossible");
         assert_eq!((code, stderr.as_str()), (hopeless, ""), "{stem}\n{stdout}");
@@ -62,8 +59,6 @@ fn every_shipped_spec_has_a_cell_for_every_output() {
                 "{stem}: {name}\n{stdout}"
             );
         }
-        // One second is the promise of the optimised program; tests run slower, and side by side.
-        assert!(elapsed < 10.0, "{stem}: {elapsed:.1} s");
     }
 }
 

@@ -80,7 +80,7 @@ fn only_the_formats_named_are_written() {
         "explore",
         "bench.yaml",
         "--format",
-        "csv,json",
+        "csv,picture",
         "--format",
         "csv",
     ];
@@ -90,7 +90,7 @@ fn only_the_formats_named_are_written() {
     let names: BTreeSet<&str> = files.keys().filter_map(|file| file.to_str()).collect();
     assert_eq!(
         names,
-        BTreeSet::from([".biasloom-files", "front.csv", "front.json"])
+        BTreeSet::from([".biasloom-files", "front.csv", "front.svg"])
     );
 }
 

@@ -40,8 +40,8 @@ const IN_A_SPEC: &[Case] = &[
     // Words.
     (
         "kind: source",
-        "kind: sauce",
-        &["@sauce", "did you mean \"source\"?"],
+        "kind: soure",
+        &["@soure", "did you mean \"source\"?"],
     ),
     (
         "limits:",
@@ -186,7 +186,7 @@ fn faults_of_the_command_line() {
             "the formats are page, csv",
         ),
         (&["check", ""], "<SPEC>"),
-        (&["explore", &spec, "--seed", "-1"], "--seed"),
+        (&["explore", &spec, "--seed", "-1"], "'-1'"),
         (&["explore", &spec, "--seed", "one"], "--seed"),
         (&["explore", &spec, "--threads", "0"], "--threads"),
         (&["explore", &spec, "--effort", "through"], "'thorough'"),

@@ -21,14 +21,6 @@ pub const ROWS: &[&[&str]] = &[
     &["units", "diag", "numeric"],
 ];
 
-/// Uses that point up all the same, each with its reason: module, what it uses, why. One that is no
-/// longer used fails the test as well.
-const EXCEPTIONS: &[(&str, &str, &str)] = &[(
-    "search",
-    "explore::Work",
-    "the counters live beside the outcome they are reported in",
-)];
-
 fn row(module: &str) -> Option<usize> {
     ROWS.iter().position(|row| row.contains(&module))
 }
@@ -186,7 +178,6 @@ fn sources(folder: &Path) -> Vec<PathBuf> {
 fn arrows_point_down() {
     let root = Path::new(env!("CARGO_MANIFEST_DIR")).join("src");
     let mut wrong = String::new();
-    let mut needed = vec![false; EXCEPTIONS.len()];
     let mut looked_at = 0;
     for file in sources(&root) {
         let inside = file.strip_prefix(&root).unwrap();
@@ -208,26 +199,14 @@ fn arrows_point_down() {
         for Use { line, path } in uses(&fs::read_to_string(&file).unwrap()) {
             looked_at += 1;
             let target = path.split("::").next().unwrap();
-            if allowed(module, target) {
-                continue;
-            }
-            let exception = EXCEPTIONS
-                .iter()
-                .position(|(from, what, _)| *from == module && path.starts_with(what));
-            match exception {
-                Some(index) => needed[index] = true,
-                None => {
-                    let place = inside.display();
-                    writeln!(wrong, "src/{place}:{line}: {module} may not use {path}").unwrap();
-                }
+            if !allowed(module, target) {
+                let place = inside.display();
+                writeln!(wrong, "src/{place}:{line}: {module} may not use {path}").unwrap();
             }
         }
     }
     assert!(wrong.is_empty(), "\n{wrong}");
     assert!(looked_at > 100, "only {looked_at} uses were seen");
-    for (index, exception) in EXCEPTIONS.iter().enumerate() {
-        assert!(needed[index], "an exception nobody needs: {exception:?}");
-    }
 }
 
 /// The test of the test: it sees every way to write a use, and none that is not one.
