@@ -169,17 +169,20 @@ impl<'l, 'a> Desk<'l, 'a> {
             ..self.ledger.clone()
         };
         let mut tally = Tally::new();
-        let price = Clerk::new(&ledger).price(&self.plan, &mut tally);
-        let mut limits = Vec::new();
-        for (k, (share, want)) in tally.error_shares().iter().zip(&self.wants).enumerate() {
+        let mut clerk = Clerk::new(&ledger);
+        let price = clerk.price(&self.plan, &mut tally);
+        let mut limits: Vec<f64> = clerk
+            .every_share(&self.plan, &tally)
+            .iter()
+            .map(|s| s.max(1e-6).ln())
+            .collect();
+        for (k, want) in self.wants.iter().enumerate() {
             let member = &self.plan.members[self.plan.legs[k]];
             let solved = &self.pool.shapes[member.rail as usize][member.candidate];
             let probes = &self.pool.probes[member.rail as usize];
             let output = &job.spec.outputs[k];
             let low = &solved.probes[probes.index(output.range.least.0)];
-            if want.limit.is_finite() {
-                limits.extend(share.iter().map(|s| s.max(1e-6).ln()));
-            } else {
+            if want.limit.is_infinite() {
                 let middle = (output.range.least.0 + output.range.most.0) / 2.0;
                 let middle = &solved.probes[probes.index(middle)];
                 let fall = 1.0 - (1.0 + low.error[0]) / (1.0 + middle.error[0]);

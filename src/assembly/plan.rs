@@ -319,6 +319,29 @@ impl<'l, 'a> Clerk<'l, 'a> {
         })
     }
 
+    /// Error over limit of every output that has one, at both ends of its range, at every climate:
+    /// the plan must have been priced into `tally`.
+    pub fn every_share(&self, plan: &Plan, tally: &Tally) -> Vec<f64> {
+        let ledger = self.ledger;
+        let climates = crate::network::corners::climates(&ledger.job).len();
+        let groups = ledger.groups();
+        let mut out = Vec::new();
+        for (k, want) in ledger
+            .wants
+            .iter()
+            .enumerate()
+            .filter(|(_, w)| w.limit.is_finite())
+        {
+            for end in 0..2 {
+                for g in 0..groups {
+                    let errors = error(ledger, plan, tally, k, end, g) * (1.0 / want.limit);
+                    out.extend(errors.0.iter().take((climates - g * 8).min(8)));
+                }
+            }
+        }
+        out
+    }
+
     /// Makes sure every feeder pair of the plan is known.
     fn remember(&mut self, plan: &Plan, mut touched: Option<usize>) {
         if self.feeders.len() > KEPT {
@@ -537,7 +560,7 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
     let member = &plan.members[leg];
     let c = ledger.candidate(member);
     let unit = member.current / f64::from(member.units);
-    let (units, rounding) = units_for(want.current, unit);
+    let (units, _) = units_for(want.current, unit);
     let mut share = Share {
         area: want.count * c.leg_area(unit, f64::from(units)),
         ..Share::default()
@@ -551,30 +574,41 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
         tally.outputs[k] = share;
         return;
     }
-    let solved = &ledger.pool.shapes[c.rail as usize][c.index];
-    let line = &tally.lines[leg];
-    let (by_input, by_output) = (1.0 / member.current, 1.0 / want.current);
-    for (end, &probe) in ledger.ends[k].iter().enumerate() {
+    for end in 0..2 {
         let mut worst = Lanes::ZERO;
-        let copies = solved.at(probe);
         for g in 0..groups {
-            let copy = &copies[g];
-            let variance =
-                line.variance[g] + copy.variance_in * by_input + copy.variance_out * by_output;
-            let own = copy.error + rounding;
-            let mut a = line.error[0][g] + own;
-            let mut b = line.error[1][g] + own;
-            if want.absolute {
-                a += tally.absolute[0][g];
-                b += tally.absolute[1][g];
-            }
-            worst = worst.max(a.abs().max(b.abs()) + variance.sqrt() * want.sigma);
+            worst = worst.max(error(ledger, plan, tally, k, end, g));
         }
         share.ends[end] = worst.largest() / want.limit;
     }
     share.error_share = share.ends[0].max(share.ends[1]);
     share.excess += (share.error_share - 1.0).max(0.0);
     tally.outputs[k] = share;
+}
+
+/// Error of output `k` at one end of its range in one group of climates, at the worse supply.
+#[inline(always)]
+fn error(ledger: &Ledger, plan: &Plan, tally: &Tally, k: usize, end: usize, g: usize) -> Lanes {
+    let want = &ledger.wants[k];
+    let leg = plan.legs[k];
+    let member = &plan.members[leg];
+    let c = ledger.candidate(member);
+    let unit = member.current / f64::from(member.units);
+    let (_, rounding) = units_for(want.current, unit);
+    let solved = &ledger.pool.shapes[c.rail as usize][c.index];
+    let line = &tally.lines[leg];
+    let copy = &solved.at(ledger.ends[k][end])[g];
+    let variance = line.variance[g]
+        + copy.variance_in * (1.0 / member.current)
+        + copy.variance_out * (1.0 / want.current);
+    let own = copy.error + rounding;
+    let mut a = line.error[0][g] + own;
+    let mut b = line.error[1][g] + own;
+    if want.absolute {
+        a += tally.absolute[0][g];
+        b += tally.absolute[1][g];
+    }
+    a.abs().max(b.abs()) + variance.sqrt() * want.sigma
 }
 
 /// How far a range sticks out of another, V.

@@ -21,7 +21,7 @@ const ROUNDS: usize = 24;
 /// Charge for exceeding a limit by a factor e, in units of ln(area).
 const CHARGE: f64 = 20.0;
 /// Limits further inside than this cannot matter within a step.
-const FAR: f64 = -1.5;
+const FAR: f64 = -0.7;
 
 /// Descends from the desk's present shapes within a first trust region of `radius`.
 pub(super) fn descend(desk: &mut Desk, radius: f64) {
