@@ -75,6 +75,10 @@ pub fn explore(job: &Job, observer: &dyn Observer, stop: &AtomicBool) -> Outcome
     let effort = Thoroughness::of(job.spec.search.effort);
     let mut drawn: Vec<Polished> = Vec::new();
     for &tighten in &tightenings(job) {
+        // A sweep that was cut short leaves too few shapes to build from.
+        if stop.load(Ordering::Relaxed) {
+            break;
+        }
         drawn.extend(networks(
             job, &pool, tighten, &effort, observer, stop, &mut work,
         ));
@@ -261,18 +265,20 @@ fn finish(job: &Job, drawn: Vec<Polished>, mut work: Work, stop: &AtomicBool) ->
     for (i, network) in front.iter_mut().enumerate() {
         network.rank = i + 1;
     }
-    let status = if front.is_empty() {
+    let stopped = stop.load(Ordering::Relaxed);
+    let status = if stopped {
+        // Whether anything fits is then not known.
+        Status::Interrupted
+    } else if front.is_empty() {
         let broken = nearest
             .as_ref()
             .map(|n| n.broken.clone())
             .unwrap_or_default();
         Status::NothingFits { broken }
-    } else if stop.load(Ordering::Relaxed) {
-        Status::Interrupted
     } else {
         Status::Found
     };
-    let nearest = if front.is_empty() {
+    let nearest = if front.is_empty() && !stopped {
         nearest.map(Box::new)
     } else {
         None
