@@ -319,9 +319,9 @@ impl<'l, 'a> Clerk<'l, 'a> {
         })
     }
 
-    /// Error over limit of every output that has one, at both ends of its range, at every climate:
-    /// the plan must have been priced into `tally`.
-    pub fn every_share(&self, plan: &Plan, tally: &Tally) -> Vec<f64> {
+    /// Error over limit of every output that has one, at both ends of its range, at every climate,
+    /// each with the number `2 * output + end`. The plan must have been priced into `tally`.
+    pub fn every_share(&self, plan: &Plan, tally: &Tally) -> Vec<(usize, f64)> {
         let ledger = self.ledger;
         let climates = crate::network::corners::climates(&ledger.job).len();
         let groups = ledger.groups();
@@ -335,7 +335,8 @@ impl<'l, 'a> Clerk<'l, 'a> {
             for end in 0..2 {
                 for g in 0..groups {
                     let errors = error(ledger, plan, tally, k, end, g) * (1.0 / want.limit);
-                    out.extend(errors.0.iter().take((climates - g * 8).min(8)));
+                    let counted = errors.0.iter().take((climates - g * 8).min(8));
+                    out.extend(counted.map(|e| (2 * k + end, *e)));
                 }
             }
         }
