@@ -118,10 +118,11 @@ fn map_of_the_developers_document() {
     for entry in fs::read_dir(root("src")).unwrap() {
         let path = entry.unwrap().path();
         let name = path.file_name().unwrap().to_str().unwrap();
-        if path.is_dir() {
-            there.push(format!("{name}/"));
-        } else if !path.with_extension("").is_dir() {
+        // A module with a file of its own is named by that file.
+        if !path.is_dir() {
             there.push(name.to_owned());
+        } else if !path.with_extension("rs").exists() {
+            there.push(format!("{name}/"));
         }
     }
     there.sort();
