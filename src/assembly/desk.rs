@@ -96,6 +96,14 @@ impl<'l, 'a> Desk<'l, 'a> {
             .collect()
     }
 
+    /// The solved shape of every member.
+    pub(super) fn solved(&self) -> Vec<Solved> {
+        let members = self.plan.members.iter().zip(&self.slots);
+        members
+            .map(|(m, &slot)| self.pool.shapes[m.rail as usize][slot].clone())
+            .collect()
+    }
+
     /// Puts a shape into a member's slot. False where it cannot be solved.
     pub(super) fn put(&mut self, f: usize, shape: &Shape) -> bool {
         let (rail, slot) = (self.plan.members[f].rail, self.slots[f]);
