@@ -2,6 +2,7 @@
 
 mod cli;
 mod input;
+mod job;
 mod physics;
 mod project;
 mod report;

@@ -158,6 +158,7 @@ fn draw_template(
     rail: Rail,
     unit: &Unit,
     current: f64,
+    width_loss: f64,
     probes: &[f64],
 ) -> (Draw, Template) {
     let mut draw = Draw::new();
@@ -169,7 +170,8 @@ fn draw_template(
         let node = draw.node("bias", unit.expected.cascode);
         draw.current(node, current);
         let size = super::Size {
-            width: size.width * current,
+            // Drawn: at small currents the effective width may be less than the loss itself.
+            width: size.width * current + width_loss,
             length: size.length,
         };
         (node, size)
@@ -281,7 +283,14 @@ impl<'a> Solver<'a> {
             .unit(&self.tech, shape, self.current)
             .ok_or(Failure::NoSize)?;
         let (draw, template) =
-            draw_template(self.cell, self.tech.rail, &unit, self.current, &self.probes);
+            draw_template(
+                self.cell,
+                self.tech.rail,
+                &unit,
+                self.current,
+                device::width_loss(self.tech.mosfet()),
+                &self.probes,
+            );
         self.expected = template;
         if self.groups.is_empty() {
             self.make_groups(&draw.netlist);
