@@ -29,21 +29,25 @@ impl Progress {
         self.stages.lock().unwrap_or_else(PoisonError::into_inner)
     }
 
-    /// The last stage is done; the bars stay as they are.
+    /// The present stage is over; its line says how long it took.
     pub fn finish(&self) {
-        for (_, bar) in self.stages().iter() {
-            bar.abandon();
+        if let Some((_, bar)) = self.stages().get(self.present.load(Ordering::Relaxed)) {
+            leave(bar);
         }
     }
 }
 
-/// A bar while a stage runs; a stage of unknown length shows what is done instead.
-fn style(known: bool) -> ProgressStyle {
-    let template = if known {
-        "{msg:<24!} {bar:30} {percent:>3} %  {elapsed:>4} gone, {eta:>4} left"
-    } else {
-        "{msg:<24!} {human_pos} done  {elapsed:>4} gone"
-    };
+const OVER: &str = "{msg:<24!} {elapsed:>4}";
+const KNOWN: &str = "{msg:<24!} {elapsed:>4}  {bar:30} {percent:>3} %, {eta} left";
+/// For a stage of unknown length.
+const UNKNOWN: &str = "{msg:<24!} {elapsed:>4}  {human_pos} done";
+
+fn leave(bar: &ProgressBar) {
+    bar.set_style(style(OVER));
+    bar.abandon();
+}
+
+fn style(template: &str) -> ProgressStyle {
     ProgressStyle::with_template(template)
         .unwrap_or_else(|_| ProgressStyle::default_bar())
         .progress_chars("\u{2501}\u{2578}\u{2500}")
@@ -53,12 +57,15 @@ impl Observer for Progress {
     fn stage(&self, name: &'static str, steps: u64) {
         let mut stages = self.stages();
         if let Some((_, bar)) = stages.get(self.present.load(Ordering::Relaxed)) {
-            bar.abandon();
+            leave(bar);
         }
+        let style = style(if steps > 0 { KNOWN } else { UNKNOWN });
         let index = match stages.iter().position(|(known, _)| *known == name) {
             Some(index) => index,
             None => {
-                let bar = self.bars.add(ProgressBar::no_length().with_message(name));
+                // Styled and named before it is shown for the first time.
+                let bar = ProgressBar::hidden().with_style(style.clone());
+                let bar = self.bars.add(bar.with_message(name));
                 stages.push((name, bar));
                 stages.len() - 1
             }
@@ -66,7 +73,7 @@ impl Observer for Progress {
         self.present.store(index, Ordering::Relaxed);
         let (_, bar) = &stages[index];
         bar.reset();
-        bar.set_style(style(steps > 0));
+        bar.set_style(style);
         if steps > 0 {
             bar.set_length(steps);
         } else {
