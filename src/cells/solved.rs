@@ -282,15 +282,14 @@ impl<'a> Solver<'a> {
         let unit = cell
             .unit(&self.tech, shape, self.current)
             .ok_or(Failure::NoSize)?;
-        let (draw, template) =
-            draw_template(
-                self.cell,
-                self.tech.rail,
-                &unit,
-                self.current,
-                device::width_loss(self.tech.mosfet()),
-                &self.probes,
-            );
+        let (draw, template) = draw_template(
+            self.cell,
+            self.tech.rail,
+            &unit,
+            self.current,
+            device::width_loss(self.tech.mosfet()),
+            &self.probes,
+        );
         self.expected = template;
         if self.groups.is_empty() {
             self.make_groups(&draw.netlist);
