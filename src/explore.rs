@@ -11,13 +11,12 @@ use crate::assembly::columns::Feeds;
 use crate::assembly::improve::{Menu, Scored, Search};
 use crate::assembly::plan::{Ledger, Plan};
 use crate::assembly::polish::{self, Polished};
+use crate::assembly::workshop::{Refined, Workshop};
 use crate::network::bench::Bench;
 use crate::network::probes::Pool;
 use crate::network::{Job, corners, measure};
 use crate::spec::{Effort, Spec};
 use crate::{figures, front, search};
-use rand::SeedableRng;
-use rand_pcg::Pcg64Mcg;
 use rayon::prelude::*;
 use serde::Serialize;
 use std::sync::atomic::{AtomicBool, AtomicU64, Ordering};
@@ -82,6 +81,10 @@ pub fn explore(job: &Job, observer: &dyn Observer, stop: &AtomicBool) -> Outcome
 }
 
 /// Networks for one scale of the accuracy limits, down a ladder of overhead budgets.
+///
+/// Column generation over the pool and a MILP make the first network; local search takes it from
+/// there, rung by rung. Then generations: every rung's network is refined, its shapes join the
+/// shelf, the MILP recombines all families found so far, and local search goes on from the best.
 fn networks(
     job: &Job,
     pool: &Pool,
@@ -91,93 +94,99 @@ fn networks(
     stop: &AtomicBool,
     work: &mut Work,
 ) -> Vec<Polished> {
-    let wants = candidates::wants(job, tighten);
-    let all = Candidate::all(job, &wants, pool);
     let limit = overhead_limit(job.spec);
-    let open = Ledger::new(*job, pool, &all, tighten, limit);
-    let feeds = Feeds::of(&open, effort.levels);
-    let menu = Menu::of(&open, &feeds);
-    let seed = job.spec.search.seed;
-    let search = |budget: f64, index: u64, starts: &[Plan], rounds: usize| {
-        let ledger = open.with_budget(budget);
-        let mut rng = Pcg64Mcg::seed_from_u64(seed.wrapping_mul(1_000_003).wrapping_add(index));
-        let mut search = Search::new(&ledger, &menu, stop);
-        let first = search.first();
-        let mut best = search.explore(first, rounds, &mut rng);
-        for start in starts {
-            let start = search.score(start.clone());
-            let next = search.descend(start);
-            if next.score < best.score {
-                best = next;
-            }
-        }
-        best
-    };
+    let mut shop = Workshop::open(*job, pool, tighten, limit, effort.levels, stop);
+    let seed = job.spec.search.seed.wrapping_mul(1_000_003);
+    observer.stage(
+        "searching networks",
+        (2 + effort.ladder * (effort.generations + 1)) as u64,
+    );
+    let done = AtomicU64::new(0);
+    let step = || observer.advance(done.fetch_add(1, Ordering::Relaxed) + 1);
+    let suggested = shop.columns(limit, effort.column_rounds, work);
+    step();
+    let assembled = shop.assembled(limit, &suggested, effort.nodes);
+    count(work, assembled.as_ref().map(|a| a.1));
+    let starts: Vec<&Plan> = assembled.iter().map(|a| &a.0).collect();
+    let top = shop.search(limit, &starts, true, effort.rounds, seed);
+    step();
     // The overhead that the least area wants, where nothing bounds it.
-    observer.stage("searching networks", effort.ladder as u64 * 2);
-    let top = search(limit, 0, &[], effort.rounds);
     let most = limit.min(top.price.overhead);
     let budgets: Vec<f64> = (0..effort.ladder)
         .map(|i| most * LADDER_STEP.powi(i as i32))
         .collect();
-    let done = AtomicU64::new(0);
-    let step = || observer.advance(done.fetch_add(1, Ordering::Relaxed) + 1);
-    let first: Vec<Scored> = budgets
+    let mut found: Vec<Scored> = budgets
         .par_iter()
         .enumerate()
         .map(|(i, &budget)| {
-            let found = search(
-                budget,
-                1 + i as u64,
-                std::slice::from_ref(&top.plan),
-                effort.rounds,
-            );
+            let seed = seed.wrapping_add(1 + i as u64);
+            let found = shop.search(budget, &[&top.plan], true, effort.rounds, seed);
             step();
             found
         })
         .collect();
-    // What one budget found may suit its neighbours too.
-    let plans: Vec<Plan> = first.iter().map(|s| s.plan.clone()).collect();
-    let second: Vec<Scored> = budgets
-        .par_iter()
-        .enumerate()
-        .map(|(i, &budget)| {
-            let ledger = open.with_budget(budget);
-            let mut search = Search::new(&ledger, &menu, stop);
-            let mut best = first[i].clone();
-            for (j, plan) in plans.iter().enumerate() {
-                if j.abs_diff(i) <= 2 && j != i {
-                    let start = search.score(plan.clone());
-                    let next = search.descend(start);
-                    if next.score < best.score {
-                        best = next;
-                    }
-                }
+    let mut best: Vec<Scored> = found.clone();
+    for generation in 0..effort.generations {
+        let refined: Vec<Option<Refined>> = budgets
+            .par_iter()
+            .zip(&found)
+            .map(|(&budget, scored)| shop.refine(budget, &scored.plan, 0.25))
+            .collect();
+        for (i, refined) in refined.into_iter().enumerate() {
+            let Some(refined) = refined else { continue };
+            let plan = shop.shelve(refined, work);
+            let scored = shop.score(budgets[i], &plan);
+            if scored.score < best[i].score {
+                best[i] = scored;
             }
-            step();
-            best
-        })
-        .collect();
-    observer.stage("polishing and verifying", second.len() as u64);
+        }
+        if generation + 1 == effort.generations || stop.load(Ordering::Relaxed) {
+            break;
+        }
+        let next: Vec<(Scored, Option<bool>)> = budgets
+            .par_iter()
+            .enumerate()
+            .map(|(i, &budget)| {
+                let near = |j: usize| j.abs_diff(i) <= 2;
+                let plans: Vec<&Plan> = (0..best.len())
+                    .filter(|&j| near(j))
+                    .map(|j| &best[j].plan)
+                    .collect();
+                let instances = shop.instances(&plans);
+                let assembled = shop.assembled(budget, &instances, effort.nodes);
+                let mut starts = plans;
+                starts.extend(assembled.as_ref().map(|a| &a.0));
+                let seed = seed.wrapping_add((100 * (generation + 1) + i) as u64);
+                let found = shop.search(budget, &starts, false, effort.rounds, seed);
+                step();
+                (found, assembled.as_ref().map(|a| a.1))
+            })
+            .collect();
+        for (_, proved) in &next {
+            count(work, *proved);
+        }
+        found = next.into_iter().map(|n| n.0).collect();
+    }
+    observer.stage("polishing and verifying", best.len() as u64);
     let done = AtomicU64::new(0);
     let corners = corners::verified(job);
+    let quick = stop.load(Ordering::Relaxed);
+    let how = if quick {
+        polish::Effort {
+            iterations: 0,
+            ..effort.polish
+        }
+    } else {
+        effort.polish
+    };
     let polished: Vec<(Option<Polished>, u64, u64)> = budgets
         .par_iter()
-        .zip(&second)
+        .zip(&best)
         .enumerate()
         .map(|(i, (&budget, scored))| {
-            let ledger = open.with_budget(budget);
+            let ledger = shop.ledger(budget);
             let mut bench = Bench::new(*job, corners.clone());
             let shapes = build::shapes(&ledger, &scored.plan);
-            let quick = stop.load(Ordering::Relaxed);
-            let how = if quick {
-                polish::Effort {
-                    iterations: 0,
-                    ..effort.polish
-                }
-            } else {
-                effort.polish
-            };
             let (best, evaluations) = polish::polish(
                 &ledger,
                 &mut bench,
@@ -185,7 +194,7 @@ fn networks(
                 &shapes,
                 tighten,
                 how,
-                seed ^ i as u64,
+                seed.wrapping_add(i as u64),
             );
             observer.advance(done.fetch_add(1, Ordering::Relaxed) + 1);
             (best, evaluations, bench.solutions)
@@ -199,6 +208,14 @@ fn networks(
         out.extend(best);
     }
     out
+}
+
+/// Counts a MILP that ended in a network: proved, or stopped at its limit.
+fn count(work: &mut Work, proved: Option<bool>) {
+    match proved {
+        Some(true) => work.milps_proved += 1,
+        _ => work.milps_stopped += 1,
+    }
 }
 
 /// The front of what was drawn, or the network that comes closest.
@@ -330,10 +347,16 @@ const LADDER_STEP: f64 = 0.87;
 struct Thoroughness {
     /// Rungs of the budget ladder.
     ladder: usize,
-    /// Restarts of the local search per rung.
+    /// Restarts of the local search per rung and generation.
     rounds: usize,
+    /// Generations of refinement and recombination.
+    generations: usize,
     /// Levels of collected variance in the master problem.
     levels: usize,
+    /// Rounds of column generation at most.
+    column_rounds: usize,
+    /// Branch-and-bound nodes of a MILP.
+    nodes: u64,
     polish: polish::Effort,
 }
 
@@ -348,19 +371,28 @@ impl Thoroughness {
             Effort::Quick => Thoroughness {
                 ladder: 6,
                 rounds: 1,
+                generations: 1,
                 levels: 5,
-                polish: polish(3, 25, (0, 0)),
+                column_rounds: 8,
+                nodes: 60,
+                polish: polish(3, 15, (0, 0)),
             },
             Effort::Normal => Thoroughness {
                 ladder: 12,
-                rounds: 4,
+                rounds: 3,
+                generations: 3,
                 levels: 6,
-                polish: polish(4, 40, (10, 12)),
+                column_rounds: 20,
+                nodes: 150,
+                polish: polish(4, 25, (8, 6)),
             },
             Effort::Thorough => Thoroughness {
                 ladder: 20,
-                rounds: 20,
+                rounds: 15,
+                generations: 6,
                 levels: 8,
+                column_rounds: 60,
+                nodes: 2000,
                 polish: polish(6, 80, (20, 30)),
             },
         }

@@ -567,16 +567,25 @@ impl Scan<'_, '_> {
             let add = end.error[0].abs().max(end.error[1].abs());
             for (i, &amps) in self.feeds.currents.iter().enumerate() {
                 let own = end.variance_in / current + end.variance_out / amps;
-                let step = |levels: &[f64], own: f64| {
+                // Levels round to what lies below: columns are suggestions, priced exactly
+                // afterwards, and rounding up at every feeder would forbid chains that work. A
+                // feeder always adds at least one level of variance, so chains cannot close.
+                let step = |levels: &[f64], own: f64, least: usize| {
                     let mut out = [NOWHERE; LEVELS];
                     for (k, &level) in levels.iter().enumerate() {
-                        let to = levels.partition_point(|&l| l < level + own);
-                        out[k] = if to < levels.len() { to as u8 } else { NOWHERE };
+                        let to = levels.partition_point(|&l| l <= level + own);
+                        let to = to.saturating_sub(1).max(k + least);
+                        let far = level + own > 1.5 * levels[levels.len() - 1];
+                        out[k] = if to < levels.len() && !far {
+                            to as u8
+                        } else {
+                            NOWHERE
+                        };
                     }
                     out
                 };
-                let variance = step(&self.feeds.variances, own);
-                let error = step(&self.feeds.errors, add);
+                let variance = step(&self.feeds.variances, own, 1);
+                let error = step(&self.feeds.errors, add, 0);
                 if variance[0] != NOWHERE && error[0] != NOWHERE {
                     reaches.push(Reach {
                         current: i,
@@ -779,4 +788,40 @@ pub fn shortlist(ledger: &Ledger, feeds: &Feeds) -> [Vec<usize>; 2] {
         list.dedup();
         list
     })
+}
+
+/// Column generation over `subset` of the pool: rounds of master and scan until no column of
+/// reduced cost below a five-hundredth of the value is left, or `rounds` are over. Returns the
+/// columns with those of the master's own choice first, and the number of rounds.
+pub fn generate(
+    ledger: &Ledger,
+    feeds: &Feeds,
+    subset: &[Vec<usize>; 2],
+    charge: f64,
+    rounds: usize,
+    stop: &std::sync::atomic::AtomicBool,
+) -> (Vec<Column>, usize) {
+    const TAKEN: usize = 60;
+    let mut columns: Vec<Column> = Vec::new();
+    let mut weights: Vec<f64> = Vec::new();
+    let mut done = 0;
+    while done < rounds && !stop.load(std::sync::atomic::Ordering::Relaxed) {
+        let Some(relaxed) = super::master::relax(ledger, feeds, &columns, charge) else {
+            break;
+        };
+        done += 1;
+        weights = relaxed.weights;
+        let (new, least) = price(ledger, feeds, &relaxed.prices, 1e-12, subset);
+        if new.is_empty() || -least < 0.002 * relaxed.value {
+            break;
+        }
+        columns.extend(new.into_iter().take(TAKEN));
+    }
+    weights.resize(columns.len(), 0.0);
+    let mut order: Vec<usize> = (0..columns.len()).collect();
+    order.sort_by(|&a, &b| weights[b].total_cmp(&weights[a]).then(a.cmp(&b)));
+    (
+        order.into_iter().map(|k| columns[k].clone()).collect(),
+        done,
+    )
 }

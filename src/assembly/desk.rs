@@ -96,6 +96,14 @@ impl<'l, 'a> Desk<'l, 'a> {
             .collect()
     }
 
+    /// The solved shape of every member.
+    pub(super) fn solved(&self) -> Vec<Solved> {
+        let members = self.plan.members.iter().zip(&self.slots);
+        members
+            .map(|(m, &slot)| self.pool.shapes[m.rail as usize][slot].clone())
+            .collect()
+    }
+
     /// Puts a shape into a member's slot. False where it cannot be solved.
     pub(super) fn put(&mut self, f: usize, shape: &Shape) -> bool {
         let (rail, slot) = (self.plan.members[f].rail, self.slots[f]);
@@ -135,9 +143,10 @@ impl<'l, 'a> Desk<'l, 'a> {
         tally.error_shares()
     }
 
-    /// Area, um^2, and every limit as `ln(value / limit)`: at most 0 where it is kept. The list has
-    /// the same order at every call.
-    pub(super) fn limits(&mut self) -> (f64, Vec<f64>) {
+    /// Area, um^2, and every limit as `ln(value / limit)`: at most 0 where it is kept. Each carries
+    /// the number of the thing it limits, of which the worst counts (an output's error at one end of
+    /// its range has one limit per climate). Lists have the same order at every call.
+    pub(super) fn limits(&mut self) -> (f64, Vec<(usize, f64)>) {
         self.evaluations += 1;
         // Whether a leg can serve at all must not depend on limits here: their excess is the point.
         let open: Vec<Want> = self
@@ -169,35 +178,45 @@ impl<'l, 'a> Desk<'l, 'a> {
             ..self.ledger.clone()
         };
         let mut tally = Tally::new();
-        let price = Clerk::new(&ledger).price(&self.plan, &mut tally);
-        let mut limits = Vec::new();
-        for (k, (share, want)) in tally.error_shares().iter().zip(&self.wants).enumerate() {
+        let mut clerk = Clerk::new(&ledger);
+        let price = clerk.price(&self.plan, &mut tally);
+        let mut limits: Vec<(usize, f64)> = clerk
+            .every_share(&self.plan, &tally)
+            .iter()
+            .map(|(thing, share)| (*thing, share.max(1e-6).ln()))
+            .collect();
+        let mut thing = 2 * self.wants.len();
+        let mut limit = |value: f64| {
+            limits.push((thing, value));
+            thing += 1;
+        };
+        for (k, want) in self.wants.iter().enumerate() {
             let member = &self.plan.members[self.plan.legs[k]];
             let solved = &self.pool.shapes[member.rail as usize][member.candidate];
             let probes = &self.pool.probes[member.rail as usize];
             let output = &job.spec.outputs[k];
             let low = &solved.probes[probes.index(output.range.least.0)];
-            if want.limit.is_finite() {
-                limits.extend(share.iter().map(|s| s.max(1e-6).ln()));
-            } else {
+            if want.limit.is_infinite() {
                 let middle = (output.range.least.0 + output.range.most.0) / 2.0;
                 let middle = &solved.probes[probes.index(middle)];
                 let fall = 1.0 - (1.0 + low.error[0]) / (1.0 + middle.error[0]);
                 // A share of the permitted fall, smooth through zero.
-                limits.push(fall / PLAIN_FALL - 1.0);
+                limit(fall / PLAIN_FALL - 1.0);
             }
             if want.early > 0.0 {
-                limits.push((want.early / low.early.max(1e-9)).ln());
+                limit((want.early / low.early.max(1e-9)).ln());
             }
         }
         for member in &self.plan.members {
             let c = &candidates[member.rail as usize][member.candidate];
             let unit = member.current / f64::from(member.units);
-            limits.extend(c.drawing_limits(unit, member.units));
+            for value in c.drawing_limits(unit, member.units) {
+                limit(value);
+            }
             if member.parent.is_none() {
                 // A tenth of a volt counts like a factor e.
-                limits.push((c.input[1] - self.ledger.pin[1]) * 10.0);
-                limits.push((self.ledger.pin[0] - c.input[0]) * 10.0);
+                limit((c.input[1] - self.ledger.pin[1]) * 10.0);
+                limit((self.ledger.pin[0] - c.input[0]) * 10.0);
             }
         }
         (price.area * 1e12, limits)

@@ -7,7 +7,7 @@
 //! helps; a perturbed restart (iterated local search, Lourenco, Martin, Stutzle 2003) leaves local
 //! optima.
 
-use super::candidates::Candidate;
+use super::candidates::{Candidate, Want};
 use super::columns::{Feeds, shortlist};
 use super::plan::{Clerk, Ledger, Member, Plan, Price, Tally};
 use rand::Rng;
@@ -31,6 +31,26 @@ pub struct Menu {
 }
 
 impl Menu {
+    /// The same menu for a shelf that holds just its shapes, in its order.
+    pub fn renumbered(&self, wants: &[Want]) -> Menu {
+        let place = |rail: usize, k: usize| self.shapes[rail].binary_search(&k).ok();
+        Menu {
+            shapes: [0, 1].map(|r| (0..self.shapes[r].len()).collect()),
+            own: self
+                .own
+                .iter()
+                .zip(wants)
+                .map(|(list, w)| {
+                    list.iter()
+                        .filter_map(|&k| place(w.rail as usize, k))
+                        .collect()
+                })
+                .collect(),
+            currents: self.currents.clone(),
+            charge: self.charge,
+        }
+    }
+
     /// A menu for a ledger: the candidates that win some contest, and per output a dozen of those
     /// that can serve it, from the smallest leg to the largest.
     pub fn of(ledger: &Ledger, feeds: &Feeds) -> Menu {

@@ -12,3 +12,4 @@ pub mod milp;
 pub mod plan;
 pub mod polish;
 mod slp;
+pub mod workshop;

@@ -84,16 +84,23 @@ pub struct Ledger<'a> {
 
 /// What has been collected up to the input of a family, per group of climates.
 #[derive(Debug, Clone, Copy)]
-struct Line {
-    variance: [Lanes; GROUPS],
+pub struct Line {
+    /// Variance.
+    pub(super) variance: [Lanes; GROUPS],
     /// Systematic error at the lowest and at the highest supply.
-    error: [[Lanes; GROUPS]; 2],
+    pub(super) error: [[Lanes; GROUPS]; 2],
 }
 
 const START: Line = Line {
     variance: [Lanes::ZERO; GROUPS],
     error: [[Lanes::ZERO; GROUPS]; 2],
 };
+
+impl Default for Line {
+    fn default() -> Self {
+        START
+    }
+}
 
 /// A feeder into a certain child: error at both supplies, variances at the lower one.
 #[derive(Debug, Clone, Copy)]
@@ -138,6 +145,11 @@ impl Tally {
 }
 
 impl Tally {
+    /// What every family's line has collected.
+    pub fn lines(&self) -> &[Line] {
+        &self.lines
+    }
+
     /// Error of each output over its limit, at the low and the high end of its range.
     pub fn error_shares(&self) -> Vec<[f64; 2]> {
         self.outputs.iter().map(|o| o.ends).collect()
@@ -316,6 +328,73 @@ impl<'l, 'a> Clerk<'l, 'a> {
             plan,
             tally: scratch,
             touched: Some(touched),
+        })
+    }
+
+    /// Error over limit of every output that has one, at both ends of its range, at every climate,
+    /// each with the number `2 * output + end`. The plan must have been priced into `tally`.
+    pub fn every_share(&self, plan: &Plan, tally: &Tally) -> Vec<(usize, f64)> {
+        let ledger = self.ledger;
+        let climates = crate::network::corners::climates(&ledger.job).len();
+        let groups = ledger.groups();
+        let mut out = Vec::new();
+        for (k, want) in ledger
+            .wants
+            .iter()
+            .enumerate()
+            .filter(|(_, w)| w.limit.is_finite())
+        {
+            for end in 0..2 {
+                for g in 0..groups {
+                    let errors = error(ledger, plan, tally, k, end, g) * (1.0 / want.limit);
+                    let counted = errors.0.iter().take((climates - g * 8).min(8));
+                    out.extend(counted.map(|e| (2 * k + end, *e)));
+                }
+            }
+        }
+        out
+    }
+
+    /// Whether a family on such a line could serve output `k` with at most `slack` times its limit.
+    pub fn serves(&self, member: &Member, line: &Line, k: usize, slack: f64) -> bool {
+        let ledger = self.ledger;
+        let c = ledger.candidate(member);
+        let want = &ledger.wants[k];
+        if c.outputs[k].is_none() {
+            return false;
+        }
+        if want.limit.is_infinite() {
+            return true;
+        }
+        let absolute = [[Lanes::ZERO; GROUPS]; 2];
+        (0..2).all(|end| {
+            (0..ledger.groups()).all(|g| {
+                leg_error(ledger, member, line, &absolute, k, end, g).largest()
+                    <= slack * want.limit
+            })
+        })
+    }
+
+    /// Whether `giver` could feed `taker`: the line it makes has collected at most `slack` times
+    /// the variance the taker's has, and the giver's own less than that.
+    pub fn feeds(
+        &mut self,
+        giver: &super::milp::Instance,
+        taker: &super::milp::Instance,
+        slack: f64,
+    ) -> bool {
+        if !giver.line.less(&taker.line) {
+            return false;
+        }
+        let end = self.feeder(&giver.member, &taker.member, false);
+        if end.worst > 0.2 {
+            return false;
+        }
+        (0..self.ledger.groups()).all(|g| {
+            let made = giver.line.variance[g]
+                + end.variance_in[g] * (1.0 / giver.member.current)
+                + end.variance_out[g] * (1.0 / taker.member.current);
+            (made - taker.line.variance[g] * slack).largest() <= 0.0
         })
     }
 
@@ -537,7 +616,7 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
     let member = &plan.members[leg];
     let c = ledger.candidate(member);
     let unit = member.current / f64::from(member.units);
-    let (units, rounding) = units_for(want.current, unit);
+    let (units, _) = units_for(want.current, unit);
     let mut share = Share {
         area: want.count * c.leg_area(unit, f64::from(units)),
         ..Share::default()
@@ -550,30 +629,61 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
         tally.outputs[k] = share;
         return;
     }
-    let solved = &ledger.pool.shapes[c.rail as usize][c.index];
-    let line = &tally.lines[leg];
-    let (by_input, by_output) = (1.0 / member.current, 1.0 / want.current);
-    for (end, &probe) in ledger.ends[k].iter().enumerate() {
+    for end in 0..2 {
         let mut worst = Lanes::ZERO;
-        let copies = solved.at(probe);
         for g in 0..groups {
-            let copy = &copies[g];
-            let variance =
-                line.variance[g] + copy.variance_in * by_input + copy.variance_out * by_output;
-            let own = copy.error + rounding;
-            let mut a = line.error[0][g] + own;
-            let mut b = line.error[1][g] + own;
-            if want.absolute {
-                a += tally.absolute[0][g];
-                b += tally.absolute[1][g];
-            }
-            worst = worst.max(a.abs().max(b.abs()) + variance.sqrt() * want.sigma);
+            worst = worst.max(error(ledger, plan, tally, k, end, g));
         }
         share.ends[end] = worst.largest() / want.limit;
     }
     share.error_share = share.ends[0].max(share.ends[1]);
     share.excess += (share.error_share - 1.0).max(0.0);
     tally.outputs[k] = share;
+}
+
+/// Error of output `k` at one end of its range in one group of climates, at the worse supply.
+#[inline(always)]
+fn error(ledger: &Ledger, plan: &Plan, tally: &Tally, k: usize, end: usize, g: usize) -> Lanes {
+    let leg = plan.legs[k];
+    leg_error(
+        ledger,
+        &plan.members[leg],
+        &tally.lines[leg],
+        &tally.absolute,
+        k,
+        end,
+        g,
+    )
+}
+
+/// The same for a leg of any family on any line.
+#[inline(always)]
+fn leg_error(
+    ledger: &Ledger,
+    member: &Member,
+    line: &Line,
+    absolute: &[[Lanes; GROUPS]; 2],
+    k: usize,
+    end: usize,
+    g: usize,
+) -> Lanes {
+    let want = &ledger.wants[k];
+    let c = ledger.candidate(member);
+    let unit = member.current / f64::from(member.units);
+    let (_, rounding) = units_for(want.current, unit);
+    let solved = &ledger.pool.shapes[c.rail as usize][c.index];
+    let copy = &solved.at(ledger.ends[k][end])[g];
+    let variance = line.variance[g]
+        + copy.variance_in * (1.0 / member.current)
+        + copy.variance_out * (1.0 / want.current);
+    let own = copy.error + rounding;
+    let mut a = line.error[0][g] + own;
+    let mut b = line.error[1][g] + own;
+    if want.absolute {
+        a += absolute[0][g];
+        b += absolute[1][g];
+    }
+    a.abs().max(b.abs()) + variance.sqrt() * want.sigma
 }
 
 /// How far a range sticks out of another, V.

@@ -13,6 +13,7 @@ use super::desk::{Desk, shape_of, variables};
 use super::plan::{Ledger, Plan};
 use super::slp;
 use crate::cells::Shape;
+use crate::cells::solved::Solved;
 use crate::network::bench::Bench;
 use crate::network::measure::{Measured, measure, trim_reference};
 use crate::network::{Job, Network};
@@ -184,6 +185,19 @@ pub fn excess(job: &Job, measured: &Measured, pin: [f64; 2], tighten: f64, budge
         sum += (pin[0] - volts).max(0.0) + (volts - pin[1]).max(0.0);
     }
     sum
+}
+
+/// Refines a plan's sizes on paper. Returns its shapes solved, one per member, and the evaluations
+/// spent; `None` where a shape cannot be solved again.
+pub fn refine(
+    ledger: &Ledger,
+    plan: &Plan,
+    shapes: &[Shape],
+    radius: f64,
+) -> Option<(Vec<Solved>, u64)> {
+    let mut desk = Desk::new(ledger, plan, shapes)?;
+    slp::descend(&mut desk, radius);
+    Some((desk.solved(), desk.evaluations))
 }
 
 /// Polishes a plan. Returns the least network that met every limit when solved as a whole, or the

@@ -18,52 +18,98 @@ const STEP: f64 = 0.01;
 const FINE: f64 = 0.004;
 /// Linearisations at most.
 const ROUNDS: usize = 24;
-/// Charge for exceeding a limit by a factor e, in units of ln(area).
-const CHARGE: f64 = 20.0;
+/// Charge for exceeding a limit by a factor e, in units of ln(area). An exact penalty must exceed
+/// every multiplier; area falls at most with the square of an error, so they add up to about 2.
+const CHARGE: f64 = 5.0;
 /// Limits further inside than this cannot matter within a step.
-const FAR: f64 = -1.5;
+const FAR: f64 = -0.7;
+
+/// A point of the descent.
+struct Point {
+    shapes: Vec<Shape>,
+    area: f64,
+    limits: Vec<(usize, f64)>,
+    merit: f64,
+}
+
+impl Point {
+    fn at(desk: &mut Desk, shapes: Vec<Shape>) -> Option<Point> {
+        if !place(desk, &shapes) {
+            return None;
+        }
+        let (area, limits) = desk.limits();
+        let mut worst: Vec<f64> = Vec::new();
+        for &(thing, value) in &limits {
+            if worst.len() <= thing {
+                worst.resize(thing + 1, 0.0);
+            }
+            worst[thing] = worst[thing].max(value);
+        }
+        let merit = area.ln() + CHARGE * worst.iter().sum::<f64>();
+        Some(Point {
+            shapes,
+            area,
+            limits,
+            merit,
+        })
+    }
+}
 
 /// Descends from the desk's present shapes within a first trust region of `radius`.
 pub(super) fn descend(desk: &mut Desk, radius: f64) {
+    let start = desk.shapes();
     desk.snap = false;
-    let mut shapes = desk.shapes();
-    let (mut area, mut limits) = desk.limits();
     let mut radius = radius;
     let mut slopes: Option<Slopes> = None;
-    for _ in 0..ROUNDS {
-        if radius < FINE {
-            break;
-        }
-        let at = slopes.get_or_insert_with(|| differentiate(desk, &shapes, area, &limits));
-        let Some(step) = propose(desk, &shapes, at, &limits, radius) else {
-            break;
-        };
-        let next = moved(&shapes, &step);
-        let (new_area, new_limits) = if place(desk, &next) {
-            desk.limits()
-        } else {
-            (f64::INFINITY, limits.clone())
-        };
-        if merit(new_area, &new_limits) < merit(area, &limits) - 1e-6 {
-            let gain = merit(area, &limits) - merit(new_area, &new_limits);
-            (shapes, area, limits) = (next, new_area, new_limits);
-            slopes = None;
-            // A small gain at this radius promises less at the same.
-            radius = if gain > 0.002 {
-                (radius * 1.5).min(0.4)
-            } else {
-                radius * 0.5
+    if let Some(mut here) = Point::at(desk, start.clone()) {
+        for _ in 0..ROUNDS {
+            if radius < FINE {
+                break;
+            }
+            let at = slopes.get_or_insert_with(|| differentiate(desk, &here));
+            let values: Vec<f64> = here.limits.iter().map(|l| l.1).collect();
+            let Some(step) = propose(desk, &here, at, &values, radius) else {
+                break;
             };
-        } else {
-            radius *= 0.35;
+            let mut next = Point::at(desk, moved(&here.shapes, &step));
+            // The limits bend: shift them by what the linear model missed and aim again (second-
+            // order correction, Fletcher 1987).
+            if let Some(missed) = &next {
+                let aim: Vec<f64> = missed
+                    .limits
+                    .iter()
+                    .enumerate()
+                    .map(|(j, l)| l.1 - at.limit(j, &step))
+                    .collect();
+                if let Some(again) = propose(desk, &here, at, &aim, radius)
+                    && let Some(second) = Point::at(desk, moved(&here.shapes, &again))
+                    && second.merit < missed.merit
+                {
+                    next = Some(second);
+                }
+            }
+            match next {
+                Some(next) if next.merit < here.merit - 1e-6 => {
+                    let gain = here.merit - next.merit;
+                    here = next;
+                    slopes = None;
+                    // A small gain at this radius promises less at the same.
+                    radius = if gain > 0.004 {
+                        (radius * 1.5).min(0.4)
+                    } else {
+                        radius * 0.5
+                    };
+                }
+                _ => radius *= 0.4,
+            }
+        }
+        desk.snap = true;
+        if place(desk, &here.shapes) {
+            return;
         }
     }
     desk.snap = true;
-    place(desk, &shapes);
-}
-
-fn merit(area: f64, limits: &[f64]) -> f64 {
-    area.ln() + CHARGE * limits.iter().map(|g| g.max(0.0)).sum::<f64>()
+    place(desk, &start);
 }
 
 fn place(desk: &mut Desk, shapes: &[Shape]) -> bool {
@@ -92,7 +138,26 @@ struct Slopes {
     limits: Vec<Vec<Vec<f64>>>,
 }
 
-fn differentiate(desk: &mut Desk, shapes: &[Shape], area: f64, limits: &[f64]) -> Slopes {
+impl Slopes {
+    /// Change of limit `j` along a step.
+    fn limit(&self, j: usize, step: &[Vec<f64>]) -> f64 {
+        let mut sum = 0.0;
+        for (slopes, step) in self.limits.iter().zip(step) {
+            for (slope, d) in slopes.iter().zip(step) {
+                sum += slope[j] * d;
+            }
+        }
+        sum
+    }
+}
+
+fn differentiate(desk: &mut Desk, here: &Point) -> Slopes {
+    let Point {
+        shapes,
+        area,
+        limits,
+        ..
+    } = here;
     let mut slopes = Slopes {
         area: Vec::new(),
         limits: Vec::new(),
@@ -107,7 +172,8 @@ fn differentiate(desk: &mut Desk, shapes: &[Shape], area: f64, limits: &[f64]) -
             if desk.put(f, &shape_of(shape, &y)) {
                 let (a, l) = desk.limits();
                 by_area.push((a.ln() - area.ln()) / STEP);
-                by_limits.push(l.iter().zip(limits).map(|(b, a)| (b - a) / STEP).collect());
+                let slopes = l.iter().zip(limits).map(|(b, a)| (b.1 - a.1) / STEP);
+                by_limits.push(slopes.collect());
             } else {
                 by_area.push(0.0);
                 by_limits.push(vec![0.0; limits.len()]);
@@ -123,13 +189,14 @@ fn differentiate(desk: &mut Desk, shapes: &[Shape], area: f64, limits: &[f64]) -
 /// The step that is best on the linearised network within the trust region.
 fn propose(
     desk: &Desk,
-    shapes: &[Shape],
+    here: &Point,
     slopes: &Slopes,
     limits: &[f64],
     radius: f64,
 ) -> Option<Vec<Vec<f64>>> {
     let mut vars = ProblemVariables::new();
-    let steps: Vec<Vec<Variable>> = shapes
+    let steps: Vec<Vec<Variable>> = here
+        .shapes
         .iter()
         .enumerate()
         .map(|(f, shape)| {

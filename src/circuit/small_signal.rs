@@ -83,19 +83,15 @@ impl Circuit {
             let channel = [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm];
             let [bg, bd, bs] = p.ib_slopes;
             let impact = [bd, bg, bs, -(bd + bg + bs)];
-            if m.nodes[0] == node {
-                for j in 0..4 {
-                    visit(m.nodes[j], channel[j] + impact[j]);
+            for ((&other, channel), impact) in m.nodes.iter().zip(channel).zip(impact) {
+                if m.nodes[0] == node {
+                    visit(other, channel + impact);
                 }
-            }
-            if m.nodes[2] == node {
-                for j in 0..4 {
-                    visit(m.nodes[j], -channel[j]);
+                if m.nodes[2] == node {
+                    visit(other, -channel);
                 }
-            }
-            if m.nodes[3] == node {
-                for j in 0..4 {
-                    visit(m.nodes[j], -impact[j]);
+                if m.nodes[3] == node {
+                    visit(other, -impact);
                 }
             }
         }

@@ -13,11 +13,14 @@
 //! 4. 2 q + ln q = (VP - V)/UT at source (qs) and drain (qd)
 //! 5. velocity saturation: the drain charge cannot fall below qdsat, where
 //!    qs^2 + qs - qdsat^2 - qdsat = 2 qdsat / lc with lc = 2 mu UT / (vsat L)
-//!    (Enz, Chicco, Pezzotta, *IEEE Solid-State Circuits Mag.* 9, 2017)
-//! 6. i = qs^2 + qs - qd^2 - qd; ID = 2 n KP (W/L) UT^2 i times
-//!    7. vertical field 1/(1 + theta UT (qs + qd)) and low charge 1/(1 + rise/(1 + qs + qd))
-//!    8. channel-length modulation 1 + A ln(1 + (VDS - VDSeff)/VE),
-//!       VDSeff = VDS/(1 + (VDS/VDSsat)^4)^(1/4)
+//!    (Enz, Chicco, Pezzotta, *IEEE Solid-State Circuits Mag.* 9, 2017). The corner is rounded:
+//!    qe = (qd + qdsat + sqrt((qd - qdsat)^2 + 2 (1 - qdsat/qs)(1 - qd/qs) qdsat qd))/2 takes the
+//!    place of qd from here on
+//! 6. i = qs^2 + qs - qe^2 - qe; ID = 2 n KP (W/L) UT^2 i, times the factors of 7 and 8
+//! 7. vertical field 1/(1 + theta UT (qs + qe)) and low charge 1/(1 + rise/(1 + qs + qe)); the
+//!    current rises with VDS everywhere as long as rise is at most 1
+//! 8. channel-length modulation 1 + A ln(1 + (VDS - VDSeff)/VE) with
+//!    VDSeff = VDS/(1 + (VDS/VDSsat)^4)^(1/4)
 //! 9. impact ionisation, drain to bulk: ID Ai (VDS - VDSeff) exp(-Bi/(VDS - VDSeff))
 
 use super::constants::{band_gap, thermal_voltage};

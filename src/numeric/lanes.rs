@@ -4,6 +4,11 @@
 //! them. The transcendental functions are polynomials of basic operations, so every machine
 //! gives the same digits. Accuracy: at most 2 units in the last place over the stated range.
 
+#![expect(
+    clippy::needless_range_loop,
+    reason = "a loop over a fixed range of indices is what compiles to one vector instruction"
+)]
+
 use std::ops::{Add, AddAssign, Div, Mul, Neg, Sub, SubAssign};
 
 /// Number of lanes.
@@ -223,6 +228,7 @@ impl Lanes {
     /// `x = 2^k m` with m in [sqrt(1/2), sqrt(2)), then the odd series in s = (m-1)/(m+1) with
     /// the minimax coefficients of Sun's fdlibm `e_log.c` (1993).
     #[inline(always)]
+    #[expect(clippy::excessive_precision, reason = "the digits of the source")]
     pub fn ln(self) -> Lanes {
         map(self, |x| {
             const LN2_HI: f64 = 6.931_471_803_691_238e-1;

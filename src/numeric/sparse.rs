@@ -237,7 +237,7 @@ impl Plan {
                 for &(u, _) in upper {
                     let target = self.updates[next] as usize;
                     next += 1;
-                    a[target] = a[target] - l * a[u as usize];
+                    a[target] -= l * a[u as usize];
                 }
             }
         }
@@ -260,13 +260,13 @@ impl Plan {
         for (k, step) in self.steps.iter().enumerate() {
             let value = b[self.rows[k] as usize];
             for &(slot, row) in &self.lower[step.lower.0 as usize..step.lower.1 as usize] {
-                b[row as usize] = b[row as usize] - a[slot as usize] * value;
+                b[row as usize] -= a[slot as usize] * value;
             }
         }
         for (k, step) in self.steps.iter().enumerate().rev() {
             let mut value = b[self.rows[k] as usize];
             for &(slot, col) in &self.upper[step.upper.0 as usize..step.upper.1 as usize] {
-                value = value - a[slot as usize] * x[col as usize];
+                value -= a[slot as usize] * x[col as usize];
             }
             x[self.cols[k] as usize] = value * a[step.pivot as usize];
         }
@@ -281,14 +281,14 @@ impl Plan {
             let z = c[self.cols[k] as usize] * a[step.pivot as usize];
             y[self.rows[k] as usize] = z;
             for &(slot, col) in &self.upper[step.upper.0 as usize..step.upper.1 as usize] {
-                c[col as usize] = c[col as usize] - a[slot as usize] * z;
+                c[col as usize] -= a[slot as usize] * z;
             }
         }
         // L^T y = z, backwards.
         for (k, step) in self.steps.iter().enumerate().rev() {
             let mut value = y[self.rows[k] as usize];
             for &(slot, row) in &self.lower[step.lower.0 as usize..step.lower.1 as usize] {
-                value = value - a[slot as usize] * y[row as usize];
+                value -= a[slot as usize] * y[row as usize];
             }
             y[self.rows[k] as usize] = value;
         }

@@ -80,7 +80,7 @@ fn charge_equation_table() {
             (ours - q).abs() < 0.6e-4 * q / (1.0 + 2.0 * q) + 0.6e-6,
             "{v}"
         );
-        let exact = ((1.0 + 4.0 * ic as f64).sqrt() - 1.0) / 2.0;
+        let exact = (f64::sqrt(1.0 + 4.0 * ic) - 1.0) / 2.0;
         close(q, exact, 1e-4);
         close(charge_of(2.0 * exact + exact.ln()), exact, 1e-14);
     }
@@ -233,7 +233,7 @@ fn efficiency_and_saturation_voltage_over_inversion() {
         (10.0, 0.27016, 9.4031),
         (100.0, 0.09512, 23.0250),
     ] {
-        let q = ((1.0 + 4.0 * ic as f64).sqrt() - 1.0) / 2.0;
+        let q = (f64::sqrt(1.0 + 4.0 * ic) - 1.0) / 2.0;
         let vs = vp - ut * (2.0 * q + q.ln());
         let p = at(&device, 2.0, 4.0, vs);
         close(p.gms.0[0] * ut / p.id.0[0], efficiency, 6e-5);
@@ -309,7 +309,7 @@ fn single_device_of_a_textbook_card() {
             &at_temperature(300.0),
         );
         // The book leaves channel-length modulation out of the bias point: VDS at its smallest.
-        let vov = (2.0 * 0.5e-3 / (kp * 100.0) as f64).sqrt();
+        let vov = f64::sqrt(2.0 * 0.5e-3 / (kp * 100.0));
         let p = at(&device, vt + vov, vov + 1e-9, 0.0);
         let share = 1.0 + lambda * vov;
         close(p.gm.0[0] / share, gm, 1e-3);
@@ -410,12 +410,11 @@ fn every_slope_agrees_with_a_finite_difference() {
                 // impact current far below any other is steeper than the step resolves.
                 let size =
                     pick(&here, ib, lane).abs() / 0.02 + ours.iter().map(|s| s.abs()).sum::<f64>();
-                for which in 0..3 {
+                for (which, ours) in ours.into_iter().enumerate() {
                     let truth = by(which);
                     assert!(
-                        (ours[which] - truth).abs() <= 2e-8 * size + 1e-18,
-                        "round {round} ib {ib} slope {which} at {vg} {vd} {vs}: {} {truth} of {size}",
-                        ours[which]
+                        (ours - truth).abs() <= 2e-8 * size + 1e-18,
+                        "round {round} ib {ib} slope {which} at {vg} {vd} {vs}: {ours} {truth} of {size}"
                     );
                 }
             }
@@ -574,8 +573,8 @@ fn lanes_are_independent() {
         let v: [Lanes; 3] =
             std::array::from_fn(|_| Lanes::from_fn(|_| rng.random_range(-0.2..2.5)));
         let all = together.at(v[0], v[1], v[2]);
-        for lane in 0..WIDTH {
-            let alone = device(law.clone(), 300.0, 5e-6, 0.5e-6, &[lanes[lane]; WIDTH]);
+        for (lane, &conditions) in lanes.iter().enumerate() {
+            let alone = device(law.clone(), 300.0, 5e-6, 0.5e-6, &[conditions; WIDTH]);
             let one = at(&alone, v[0].0[lane], v[1].0[lane], v[2].0[lane]);
             assert_eq!(all.id.0[lane], one.id.0[0]);
             assert_eq!(all.gms.0[lane], one.gms.0[0]);

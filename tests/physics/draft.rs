@@ -103,7 +103,7 @@ impl Draft {
 
     /// Solves from `start` volts at every unknown node and panics unless every lane converges.
     pub fn solve_from(&self, start: f64) -> Solved {
-        let mut circuit = self.circuit();
+        let circuit = self.circuit();
         let mut state = State::start(vec![Lanes::splat(start); self.netlist.nodes.len()]);
         assert!(circuit.solve(&mut state), "residuals {:?}", state.residual);
         circuit.linearise(&mut state);

@@ -59,10 +59,10 @@ impl Mirror {
             let mut state = State::start(start);
             held.solve(&mut state);
             let drawn = held.current_from(&state, self.fed[k].0);
-            for lane in 0..WIDTH {
+            for (lane, fine) in fine.iter_mut().enumerate() {
                 let needed = self.circuit.currents[k].amps.0[lane];
                 // What cannot be decided counts as in range.
-                fine[lane] &= !state.converged[lane] || drawn.0[lane].abs() > needed;
+                *fine &= !state.converged[lane] || drawn.0[lane].abs() > needed;
             }
         }
         fine

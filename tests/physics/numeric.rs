@@ -101,11 +101,11 @@ pub fn dense_solve(mut a: Vec<Vec<f64>>, mut b: Vec<f64>) -> Option<Vec<f64>> {
         }
         a.swap(k, p);
         b.swap(k, p);
+        let pivot = a[k].clone();
         for r in k + 1..n {
-            let factor = a[r][k] / a[k][k];
-            for c in k..n {
-                let upper = a[k][c];
-                a[r][c] -= factor * upper;
+            let factor = a[r][k] / pivot[k];
+            for (below, upper) in a[r][k..].iter_mut().zip(&pivot[k..]) {
+                *below -= factor * upper;
             }
             b[r] -= factor * b[k];
         }

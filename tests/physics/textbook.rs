@@ -381,7 +381,7 @@ fn threshold_referenced_source() {
         .voltage("out", 2.0)
         .pmos("out", "m", "vdd", p());
     // The dead point has every device off: start alive.
-    let mut circuit = d.circuit();
+    let circuit = d.circuit();
     let mut volts = vec![Lanes::splat(1.0); d.netlist.nodes.len()];
     for (name, v) in [("a", 1.7), ("m", 4.1), ("r", 0.82)] {
         volts[d.node(name)] = Lanes::splat(v);
@@ -499,7 +499,7 @@ fn beta_multiplier(unit: Device, ratio: f64, p: Device, r: f64, guess: [f64; 3])
         .pmos("m", "m", "vdd", p)
         .pmos("g", "m", "vdd", p)
         .pmos("out", "m", "vdd", p);
-    let mut circuit = d.circuit();
+    let circuit = d.circuit();
     let lane = Lanes::splat;
     let mut volts = vec![lane(0.0); d.netlist.nodes.len()];
     for (name, v) in ["g", "m", "s"].into_iter().zip(guess) {
