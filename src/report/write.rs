@@ -60,7 +60,7 @@ pub fn write(folder: &Path, files: &[(PathBuf, Vec<u8>)]) -> Result<(), WriteErr
 /// `names` are files that the report will hold whatever the work brings.
 ///
 /// # Errors
-/// The [`WriteError`] that [`write`] would end in as things stand.
+/// The [`WriteError`] that [`write()`] would end in as things stand.
 pub fn check(folder: &Path, names: &[&str]) -> Result<(), WriteError> {
     // The nearest folder that exists is where everything else would be made.
     let absolute = std::path::absolute(folder).map_err(system("find", folder))?;

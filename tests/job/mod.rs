@@ -1,7 +1,11 @@
 //! The main job: from a spec to a front of verified networks, held against outside values.
 
+mod build;
+mod catalogue;
 mod front;
+mod outside;
 mod probe;
+mod structure;
 
 use biasloom::explore::{Outcome, Silent, explore};
 use biasloom::figures::FIGURES;
