@@ -64,15 +64,20 @@ pub struct OutputEstimate {
 pub fn explore(job: &Job, observer: &dyn Observer, stop: &AtomicBool) -> Outcome {
     let mut work = Work::default();
     observer.stage("solving shapes", 0);
-    let pool = search::pool::sweep(job, &mut work, &|done, total| {
+    let progress = |done, total| {
         if done == 0 {
             observer.stage("solving shapes", total);
         }
         observer.advance(done);
-    });
+    };
+    let pool = search::pool::sweep(job, &mut work, &progress, stop);
     let effort = Thoroughness::of(job.spec.search.effort);
     let mut drawn: Vec<Polished> = Vec::new();
     for &tighten in &tightenings(job) {
+        // A sweep that was cut short leaves too few shapes to build from.
+        if stop.load(Ordering::Relaxed) {
+            break;
+        }
         drawn.extend(networks(
             job, &pool, tighten, &effort, observer, stop, &mut work,
         ));
@@ -325,18 +330,20 @@ fn finish(job: &Job, drawn: Vec<Polished>, mut work: Work, stop: &AtomicBool) ->
     for (i, network) in front.iter_mut().enumerate() {
         network.rank = i + 1;
     }
-    let status = if front.is_empty() {
+    let stopped = stop.load(Ordering::Relaxed);
+    let status = if stopped {
+        // Whether anything fits is then not known.
+        Status::Interrupted
+    } else if front.is_empty() {
         let broken = nearest
             .as_ref()
             .map(|n| n.broken.clone())
             .unwrap_or_default();
         Status::NothingFits { broken }
-    } else if stop.load(Ordering::Relaxed) {
-        Status::Interrupted
     } else {
         Status::Found
     };
-    let nearest = if front.is_empty() {
+    let nearest = if front.is_empty() && !stopped {
         nearest.map(Box::new)
     } else {
         None
@@ -450,7 +457,8 @@ impl Thoroughness {
 /// A first look at a spec, in well under a second.
 pub fn estimate(job: &Job) -> Estimate {
     let mut work = Work::default();
-    let pool = search::pool::sweep_at(job, Effort::Quick, &mut work, &|_, _| {});
+    let stop = AtomicBool::new(false);
+    let pool = search::pool::sweep_at(job, Effort::Quick, &mut work, &|_, _| {}, &stop);
     let wants = candidates::wants(job, 1.0);
     let all = Candidate::all(job, &wants, &pool);
     let ledger = Ledger::new(*job, &pool, &all, 1.0, overhead_limit(job.spec));
@@ -466,7 +474,6 @@ pub fn estimate(job: &Job) -> Estimate {
         .collect();
     let feeds = Feeds::of(&ledger, 5);
     let menu = Menu::of(&ledger, &feeds);
-    let stop = AtomicBool::new(false);
     let mut search = Search::new(&ledger, &menu, &stop);
     let first = search.first();
     let found = search.descend(first);

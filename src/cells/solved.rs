@@ -168,10 +168,9 @@ fn draw_template(
 ) -> (Draw, Template) {
     let mut draw = Draw::new();
     draw.rail = tech.rail;
-    let least_width = tech.mosfet().width.least.0;
     let input = draw.node("", unit.expected.input);
     draw.current(input, current);
-    let bias = unit.bias_size(current, least_width).map(|size| {
+    let bias = unit.bias_size(tech, current).map(|size| {
         let node = draw.node("", unit.expected.cascode);
         draw.current(node, current);
         (node, size)
