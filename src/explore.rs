@@ -99,7 +99,8 @@ fn networks(
     stop: &AtomicBool,
     work: &mut Work,
 ) -> Vec<Polished> {
-    let limit = overhead_limit(job.spec);
+    // Nominal currents are what a plan adds up; at the worst corner they are a little more.
+    let limit = overhead_limit(job.spec) * 0.997;
     let mut shop = Workshop::open(*job, pool, tighten, limit, effort.levels, stop);
     let seed = job.spec.search.seed.wrapping_mul(1_000_003);
     observer.stage(
@@ -223,6 +224,8 @@ fn networks(
 /// Moves rungs that found nothing of their own into the widest gaps of the front: an epsilon
 /// sweep whose steps follow the front. Budgets stay in falling order, each with its best so far.
 fn spread(budgets: &mut Vec<f64>, best: &mut Vec<Scored>) {
+    /// An excess that the final polish settles.
+    const NEARLY: f64 = 2e-3;
     /// Rungs closer than this (ratio) would find the same network again.
     const CLOSE: f64 = 1.03;
     let points: Vec<Vec<f64>> = best
@@ -231,7 +234,7 @@ fn spread(budgets: &mut Vec<f64>, best: &mut Vec<Scored>) {
         .collect();
     let kept: Vec<usize> = front::nondominated(&points)
         .into_iter()
-        .filter(|&i| best[i].price.excess == 0.0)
+        .filter(|&i| best[i].price.excess < NEARLY)
         .collect();
     if kept.is_empty() {
         return;

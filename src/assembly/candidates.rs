@@ -333,7 +333,8 @@ fn fit<'p>(output: &Output, want: &Want, at: &impl Fn(f64) -> &'p Probe) -> Opti
     // accuracy is asked.
     let middle = at((output.range.least.0 + output.range.most.0) / 2.0);
     let fall = (1.0 + low.error[0]) / (1.0 + middle.error[0]) - 1.0;
-    (fall > -PLAIN_FALL).then_some([end(low), end(high)])
+    // A little inside: the whole network is held to the full fall.
+    (fall > -0.9 * PLAIN_FALL).then_some([end(low), end(high)])
 }
 
 /// Most units of a leg in a first estimate.

@@ -12,6 +12,9 @@ use crate::spec::Rail;
 use std::collections::BTreeMap;
 
 /// The paper model with shapes of its own: one slot per member.
+/// How far inside an error limit a descent aims: what straight lines miss, and a snapped length.
+const MARGIN: f64 = 5e-4;
+
 pub(super) struct Desk<'l, 'a> {
     pub(super) ledger: &'l Ledger<'a>,
     pub(super) plan: Plan,
@@ -183,7 +186,7 @@ impl<'l, 'a> Desk<'l, 'a> {
         let mut limits: Vec<(usize, f64)> = clerk
             .every_share(&self.plan, &tally)
             .iter()
-            .map(|(thing, share)| (*thing, share.max(1e-6).ln()))
+            .map(|(thing, share)| (*thing, share.max(1e-6).ln() + MARGIN))
             .collect();
         let mut thing = 2 * self.wants.len();
         let mut limit = |value: f64| {
@@ -201,7 +204,7 @@ impl<'l, 'a> Desk<'l, 'a> {
                 let middle = &solved.probes[probes.index(middle)];
                 let fall = 1.0 - (1.0 + low.error[0]) / (1.0 + middle.error[0]);
                 // A share of the permitted fall, smooth through zero.
-                limit(fall / PLAIN_FALL - 1.0);
+                limit(fall / (0.85 * PLAIN_FALL) - 1.0);
             }
             if want.early > 0.0 {
                 limit((want.early / low.early.max(1e-9)).ln());

@@ -709,8 +709,21 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
         share.ends[end] = worst.largest() / want.limit;
     }
     share.error_share = share.ends[0].max(share.ends[1]);
-    share.excess += (share.error_share - 1.0).max(0.0);
+    share.excess += compressed(share.error_share - 1.0);
     tally.outputs[k] = share;
+}
+
+/// An excess as the search counts it: itself while it is small; beyond the limit's own size only
+/// its logarithm, lest one hopeless output drown what the others say.
+#[inline(always)]
+fn compressed(excess: f64) -> f64 {
+    if excess <= 0.0 {
+        0.0
+    } else if excess <= 1.0 {
+        excess
+    } else {
+        1.0 + excess.ln()
+    }
 }
 
 /// Error of output `k` at one end of its range in one group of climates, at the worse supply.

@@ -24,6 +24,11 @@ use rand::SeedableRng;
 use rand_pcg::Pcg64Mcg;
 use std::cell::RefCell;
 
+/// Limits on paper stay a hair inside, so that the last digits of a snapped size do not decide.
+const INSIDE: f64 = 0.9995;
+/// Further rounds for a network that is not inside its limits after all.
+const EXTRA: usize = 8;
+
 /// How hard to polish.
 #[derive(Debug, Clone, Copy)]
 pub struct Effort {
@@ -168,8 +173,9 @@ fn refine_scales(desk: &RefCell<Desk>, swarm: (usize, u64), seed: u64) {
 }
 
 /// How far a measured network exceeds its limits: the sum over all of excess over limit.
-/// `tighten` scales accuracy limits, `budget` is the largest overhead current, A.
-pub fn excess(job: &Job, measured: &Measured, pin: [f64; 2], tighten: f64, budget: f64) -> f64 {
+/// `tighten` scales accuracy limits.
+pub fn excess(job: &Job, measured: &Measured, pin: [f64; 2], tighten: f64) -> f64 {
+    let limits = &job.spec.limits;
     let mut sum = 0.0;
     for (output, worst) in job.spec.outputs.iter().zip(&measured.worst) {
         if let Some(limit) = worst.limit {
@@ -180,7 +186,12 @@ pub fn excess(job: &Job, measured: &Measured, pin: [f64; 2], tighten: f64, budge
         }
     }
     let overhead = measured.overhead.iter().copied().fold(0.0, f64::max);
-    sum += (overhead / budget - 1.0).max(0.0);
+    for limit in [
+        limits.overhead_current.map(|l| l.0),
+        limits.power.map(|l| l.0 / job.spec.supply.most.0),
+    ] {
+        sum += limit.map_or(0.0, |l| (overhead / l - 1.0).max(0.0));
+    }
     for &volts in &measured.pin {
         sum += (pin[0] - volts).max(0.0) + (volts - pin[1]).max(0.0);
     }
@@ -200,7 +211,7 @@ pub fn refine(
     Some((desk.solved(), desk.evaluations))
 }
 
-/// Polishes a plan. Returns the least network that met every limit when solved as a whole, or the
+/// Polishes a plan against the spec's own limits, accuracy scaled by `tighten`. Returns the least network that met every limit when solved as a whole, or the
 /// one that came closest; and the evaluations spent.
 pub fn polish<'a>(
     ledger: &Ledger<'a>,
@@ -223,9 +234,24 @@ pub fn polish<'a>(
     };
     desk.borrow_mut().charge = 10.0 * area;
     let mut best: Option<Polished> = None;
-    for round in 0..effort.rounds {
+    let mut inside = INSIDE;
+    for round in 0..effort.rounds + EXTRA {
+        if round >= effort.rounds {
+            // Only to get inside: a little more room than last time, small steps.
+            if best.as_ref().is_some_and(|b| b.excess == 0.0) {
+                break;
+            }
+            inside -= 1.0 - INSIDE;
+        }
         if round > 0 || effort.iterations > 0 {
-            slp::descend(&mut desk.borrow_mut(), if round == 0 { 0.25 } else { 0.08 });
+            let radius = if round == 0 {
+                0.25
+            } else if round < effort.rounds {
+                0.08
+            } else {
+                0.03
+            };
+            slp::descend(&mut desk.borrow_mut(), radius);
             // The swarm and the simplex finish what straight lines leave: kinks where the worst
             // corner changes.
             if round + 2 == effort.rounds && effort.swarm.0 > 0 {
@@ -247,19 +273,13 @@ pub fn polish<'a>(
         let Ok(measured) = measure(&job, bench, &network) else {
             break;
         };
-        let over = excess(
-            &job,
-            &measured,
-            ledger.pin_to_ground(),
-            tighten,
-            ledger.budget,
-        );
+        let over = excess(&job, &measured, ledger.pin_to_ground(), tighten);
         let candidate = Polished {
             network,
             measured,
             excess: over,
         };
-        correct(&mut desk.borrow_mut(), &candidate.measured, tighten);
+        correct(&mut desk.borrow_mut(), &candidate.measured, tighten, inside);
         let better = best.as_ref().is_none_or(|b| {
             if candidate.excess > 0.0 || b.excess > 0.0 {
                 candidate.excess < b.excess
@@ -276,9 +296,7 @@ pub fn polish<'a>(
 }
 
 /// Moves the limits on paper so that paper and whole circuit agree where they stand.
-fn correct(desk: &mut Desk, measured: &Measured, tighten: f64) {
-    // A hair inside, so that the last digits of a snapped size do not decide.
-    const INSIDE: f64 = 0.9995;
+fn correct(desk: &mut Desk, measured: &Measured, tighten: f64, inside: f64) {
     let shares = desk.shares();
     for (k, worst) in measured.worst.iter().enumerate() {
         let output = &desk.ledger.job.spec.outputs[k];
@@ -286,7 +304,7 @@ fn correct(desk: &mut Desk, measured: &Measured, tighten: f64) {
             // On paper the error is share * limit on paper; in the circuit it is worst.error.
             let paper = shares[k][0].max(shares[k][1]) * desk.wants[k].limit;
             if worst.error > 0.0 && paper > 0.0 {
-                desk.wants[k].limit = (limit * tighten * INSIDE) * (paper / worst.error);
+                desk.wants[k].limit = (limit * tighten * inside) * (paper / worst.error);
             }
         }
         if let Some(least) = output.output_resistance {
@@ -297,10 +315,6 @@ fn correct(desk: &mut Desk, measured: &Measured, tighten: f64) {
                 desk.wants[k].early = desk.wants[k].early.max(asked) * short * 1.001;
             }
         }
-    }
-    let overhead = measured.overhead.iter().copied().fold(0.0, f64::max);
-    if overhead > desk.ledger.budget {
-        desk.budget *= 0.999 * desk.ledger.budget / overhead;
     }
     desk.renew();
 }
