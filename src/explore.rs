@@ -114,10 +114,27 @@ fn networks(
     let assembled = shop.assembled(limit, &suggested, effort.nodes);
     count(work, assembled.as_ref().map(|a| a.1));
     let starts: Vec<&Plan> = assembled.iter().map(|a| &a.0).collect();
-    let top = shop.search(limit, &starts, true, effort.rounds, seed);
+    let tops: Vec<Scored> = (0..effort.tops)
+        .into_par_iter()
+        .map(|i| {
+            // One from the MILP's network, the others from scratch.
+            let starts: &[&Plan] = if i == 0 { &starts } else { &[] };
+            shop.search(
+                limit,
+                starts,
+                i > 0,
+                effort.rounds,
+                seed.wrapping_add(7919 * i),
+            )
+        })
+        .collect();
     step();
-    // The overhead that the least area wants, where nothing bounds it.
-    let most = limit.min(top.price.overhead);
+    let top = tops
+        .iter()
+        .fold(&tops[0], |a, b| if b.score < a.score { b } else { a })
+        .clone();
+    // From the limit down, or from twice what the least area wants where nothing bounds it.
+    let most = limit.min(2.0 * top.price.overhead);
     let mut budgets: Vec<f64> = (0..effort.ladder)
         .map(|i| most * LADDER_STEP.powi(i as i32))
         .collect();
@@ -126,7 +143,8 @@ fn networks(
         .enumerate()
         .map(|(i, &budget)| {
             let seed = seed.wrapping_add(1 + i as u64);
-            let found = shop.search(budget, &[&top.plan], true, effort.rounds, seed);
+            let start = &tops[i % tops.len()].plan;
+            let found = shop.search(budget, &[&top.plan, start], true, effort.rounds, seed);
             step();
             found
         })
@@ -405,6 +423,8 @@ const LADDER_STEP: f64 = 0.87;
 struct Thoroughness {
     /// Rungs of the budget ladder.
     ladder: usize,
+    /// Searches from scratch before the ladder.
+    tops: u64,
     /// Restarts of the local search per rung and generation.
     rounds: usize,
     /// Generations of refinement and recombination.
@@ -428,6 +448,7 @@ impl Thoroughness {
         match effort {
             Effort::Quick => Thoroughness {
                 ladder: 6,
+                tops: 2,
                 rounds: 1,
                 generations: 1,
                 levels: 5,
@@ -437,6 +458,7 @@ impl Thoroughness {
             },
             Effort::Normal => Thoroughness {
                 ladder: 12,
+                tops: 6,
                 rounds: 2,
                 generations: 3,
                 levels: 6,
@@ -446,6 +468,7 @@ impl Thoroughness {
             },
             Effort::Thorough => Thoroughness {
                 ladder: 20,
+                tops: 16,
                 rounds: 15,
                 generations: 6,
                 levels: 8,

@@ -12,6 +12,10 @@ use crate::network::probes::{Pool, Probes};
 use crate::process::AreaRule;
 use crate::spec::{AccuracyOf, Output, Rail, Reference};
 
+/// Sizes on paper may miss a drawing limit or an output resistance by this share: descents end on
+/// the limit itself, drawing snaps to it, and the whole network is held to it exactly.
+const HAIR: f64 = 4e-3;
+
 /// A drawn device whose width grows with the unit current.
 #[derive(Debug, Clone, Copy)]
 struct Strip {
@@ -180,7 +184,8 @@ impl Candidate {
     pub fn drawable(&self, unit: f64, units: u32) -> bool {
         let wide_enough = self.strips.iter().flatten().all(|s| {
             let width = s.width * unit + self.width_loss;
-            width >= self.width_limits[0] && width <= self.width_limits[1]
+            width >= self.width_limits[0] * (1.0 - HAIR)
+                && width <= self.width_limits[1] * (1.0 + HAIR)
         });
         let resistor = match (self.resistor, &self.resistor_card) {
             (Some(volts), Some(card)) => {
@@ -189,7 +194,7 @@ impl Candidate {
                 } else {
                     1.0
                 };
-                volts / (unit * share) >= card.squares_min * card.sheet
+                volts / (unit * share) >= card.squares_min * card.sheet * (1.0 - HAIR)
             }
             _ => true,
         };
@@ -322,7 +327,7 @@ fn fit<'p>(output: &Output, want: &Want, at: &impl Fn(f64) -> &'p Probe) -> Opti
         variance_out: p.variance_out,
     };
     let (low, high) = (at(output.range.least.0), at(output.range.most.0));
-    if low.early < want.early {
+    if low.early < want.early * (1.0 - HAIR) {
         return None;
     }
     if want.limit.is_finite() {

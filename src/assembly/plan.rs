@@ -694,8 +694,11 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
         ..Share::default()
     };
     if c.outputs[k].is_none() {
-        // Never as good as an output served, and still better the nearer it comes.
-        share.excess += 1.0;
+        // Worse than an output served at twice its limit, whatever the error on paper: a search
+        // should not spend on the accuracy of a leg that cannot live here.
+        share.excess += 1.5;
+        tally.outputs[k] = share;
+        return;
     }
     if want.limit.is_infinite() {
         tally.outputs[k] = share;

@@ -18,8 +18,8 @@ const CHUNK: usize = 64;
 /// The grid of one cell.
 fn grid(tech: &Tech, cell: usize, effort: Effort, headroom: f64) -> Vec<Shape> {
     let (lengths, inversions, cascodes, drops) = match effort {
-        Effort::Quick => (9, 8, 2, 1),
-        Effort::Normal => (12, 10, 2, 2),
+        Effort::Quick => (10, 8, 3, 2),
+        Effort::Normal => (14, 11, 3, 3),
         Effort::Thorough => (20, 16, 3, 3),
     };
     let mosfet = tech.mosfet();
