@@ -9,6 +9,7 @@ use crate::network::Job;
 use crate::network::bench::of;
 use crate::network::measure::PLAIN_FALL;
 use crate::network::probes::{Pool, Probes};
+use crate::numeric::scalar::ln;
 use crate::process::AreaRule;
 use crate::spec::{AccuracyOf, Output, Rail, Reference};
 
@@ -206,8 +207,8 @@ impl Candidate {
         let mut out = Vec::new();
         for s in self.strips.iter().flatten() {
             let width = s.width * unit + self.width_loss;
-            out.push((self.width_limits[0] / width).ln());
-            out.push((width / self.width_limits[1]).ln());
+            out.push(ln(self.width_limits[0] / width));
+            out.push(ln(width / self.width_limits[1]));
         }
         if let (Some(volts), Some(card)) = (self.resistor, &self.resistor_card) {
             let share = if self.resistor_in_input {
@@ -216,7 +217,7 @@ impl Candidate {
                 1.0
             };
             let ohms = volts / (unit * share);
-            out.push((card.squares_min * card.sheet / ohms).ln());
+            out.push(ln(card.squares_min * card.sheet / ohms));
         }
         out
     }

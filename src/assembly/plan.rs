@@ -293,8 +293,8 @@ impl<'a> Ledger<'a> {
         let ohms = (middle - input).max(0.05) / current;
         let mut error = [[Lanes::ZERO; GROUPS]; 2];
         for (end, volts) in [supply.least.0, supply.most.0].into_iter().enumerate() {
-            for g in 0..self.groups() {
-                error[end][g] =
+            for (g, error) in error[end].iter_mut().enumerate().take(self.groups()) {
+                *error =
                     (volts - solved.input_lanes[g]) / (ohms * current * self.resistor[g]) - 1.0;
             }
         }
@@ -508,10 +508,10 @@ impl<'l, 'a> Clerk<'l, 'a> {
             variance_out: zero,
             worst: 0.0,
         };
-        for g in 0..ledger.groups() {
+        for (g, input) in input.iter().enumerate().take(ledger.groups()) {
             for (end, volts) in [supply.least.0, supply.most.0].into_iter().enumerate() {
-                for i in 0..8 {
-                    let Some((rung, t)) = probes.rung(volts - input[g].0[i]) else {
+                for (i, input) in input.0.iter().enumerate() {
+                    let Some((rung, t)) = probes.rung(volts - input) else {
                         // Hardly any voltage left: as good as no current.
                         out.error[end][g].0[i] = -1.0;
                         out.worst = 1.0;
@@ -725,7 +725,7 @@ fn compressed(excess: f64) -> f64 {
     } else if excess <= 1.0 {
         excess
     } else {
-        1.0 + excess.ln()
+        1.0 + crate::numeric::scalar::ln(excess)
     }
 }
 

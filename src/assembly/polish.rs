@@ -17,6 +17,7 @@ use crate::cells::solved::Solved;
 use crate::network::bench::Bench;
 use crate::network::measure::{Measured, measure, trim_reference};
 use crate::network::{Job, Network};
+use crate::numeric::scalar::exp;
 use argmin::core::{CostFunction, Error, Executor, State};
 use argmin::solver::neldermead::NelderMead;
 use argmin::solver::particleswarm::ParticleSwarm;
@@ -83,7 +84,7 @@ fn apply_scales(desk: &mut Desk, like: &[Shape], x: &[f64]) -> bool {
         desk.put(
             f,
             &Shape {
-                length: shape.length * s.exp(),
+                length: shape.length * exp(*s),
                 ..*shape
             },
         )
