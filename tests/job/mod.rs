@@ -4,7 +4,9 @@ mod build;
 mod catalogue;
 mod front;
 mod outside;
+mod paper;
 mod probe;
+mod screening;
 mod structure;
 
 use biasloom::explore::{Outcome, Silent, explore};
