@@ -64,15 +64,20 @@ pub struct OutputEstimate {
 pub fn explore(job: &Job, observer: &dyn Observer, stop: &AtomicBool) -> Outcome {
     let mut work = Work::default();
     observer.stage("solving shapes", 0);
-    let pool = search::pool::sweep(job, &mut work, &|done, total| {
+    let progress = |done, total| {
         if done == 0 {
             observer.stage("solving shapes", total);
         }
         observer.advance(done);
-    });
+    };
+    let pool = search::pool::sweep(job, &mut work, &progress, stop);
     let effort = Thoroughness::of(job.spec.search.effort);
     let mut drawn: Vec<Polished> = Vec::new();
     for &tighten in &tightenings(job) {
+        // A sweep that was cut short leaves too few shapes to build from.
+        if stop.load(Ordering::Relaxed) {
+            break;
+        }
         drawn.extend(networks(
             job, &pool, tighten, &effort, observer, stop, &mut work,
         ));
@@ -112,7 +117,7 @@ fn networks(
     step();
     // The overhead that the least area wants, where nothing bounds it.
     let most = limit.min(top.price.overhead);
-    let budgets: Vec<f64> = (0..effort.ladder)
+    let mut budgets: Vec<f64> = (0..effort.ladder)
         .map(|i| most * LADDER_STEP.powi(i as i32))
         .collect();
     let mut found: Vec<Scored> = budgets
@@ -136,18 +141,23 @@ fn networks(
             let Some(refined) = refined else { continue };
             let plan = shop.shelve(refined, work);
             let scored = shop.score(budgets[i], &plan);
-            if scored.score < best[i].score {
-                best[i] = scored;
-            }
+            // What a rung inherited from its neighbour may exceed its own budget.
+            let held = shop.score(budgets[i], &best[i].plan);
+            best[i] = if scored.score < held.score {
+                scored
+            } else {
+                held
+            };
         }
         if generation + 1 == effort.generations || stop.load(Ordering::Relaxed) {
             break;
         }
+        spread(&mut budgets, &mut best);
         let next: Vec<(Scored, Option<bool>)> = budgets
             .par_iter()
             .enumerate()
             .map(|(i, &budget)| {
-                let near = |j: usize| j.abs_diff(i) <= 2;
+                let near = |j: usize| j.abs_diff(i) <= 1;
                 let plans: Vec<&Plan> = (0..best.len())
                     .filter(|&j| near(j))
                     .map(|j| &best[j].plan)
@@ -208,6 +218,49 @@ fn networks(
         out.extend(best);
     }
     out
+}
+
+/// Moves rungs that found nothing of their own into the widest gaps of the front: an epsilon
+/// sweep whose steps follow the front. Budgets stay in falling order, each with its best so far.
+fn spread(budgets: &mut Vec<f64>, best: &mut Vec<Scored>) {
+    /// Rungs closer than this (ratio) would find the same network again.
+    const CLOSE: f64 = 1.03;
+    let points: Vec<Vec<f64>> = best
+        .iter()
+        .map(|s| vec![s.score, s.price.overhead])
+        .collect();
+    let kept: Vec<usize> = front::nondominated(&points)
+        .into_iter()
+        .filter(|&i| best[i].price.excess == 0.0)
+        .collect();
+    if kept.is_empty() {
+        return;
+    }
+    let idle = budgets.len() - kept.len();
+    // A kept rung asks for what it found and no more: the next one must do with less.
+    let mut rungs: Vec<(f64, Scored)> = kept
+        .iter()
+        .map(|&i| (best[i].price.overhead, best[i].clone()))
+        .collect();
+    rungs.sort_by(|a, b| b.0.total_cmp(&a.0));
+    // Below the last: where the ladder ended without a network, somewhere between.
+    let floor = budgets
+        .last()
+        .copied()
+        .unwrap_or(0.0)
+        .min(rungs[rungs.len() - 1].0 * 0.9);
+    for _ in 0..idle {
+        let ratio = |i: usize| rungs[i].0 / rungs.get(i + 1).map_or(floor, |r| r.0);
+        let widest = (0..rungs.len()).fold(0, |w, i| if ratio(i) > ratio(w) { i } else { w });
+        if ratio(widest) < CLOSE * CLOSE {
+            break;
+        }
+        let budget = rungs[widest].0 / ratio(widest).sqrt();
+        let start = rungs[widest].1.clone();
+        rungs.insert(widest + 1, (budget, start));
+    }
+    *budgets = rungs.iter().map(|r| r.0).collect();
+    *best = rungs.into_iter().map(|r| r.1).collect();
 }
 
 /// Counts a MILP that ended in a network: proved, or stopped at its limit.
@@ -277,18 +330,20 @@ fn finish(job: &Job, drawn: Vec<Polished>, mut work: Work, stop: &AtomicBool) ->
     for (i, network) in front.iter_mut().enumerate() {
         network.rank = i + 1;
     }
-    let status = if front.is_empty() {
+    let stopped = stop.load(Ordering::Relaxed);
+    let status = if stopped {
+        // Whether anything fits is then not known.
+        Status::Interrupted
+    } else if front.is_empty() {
         let broken = nearest
             .as_ref()
             .map(|n| n.broken.clone())
             .unwrap_or_default();
         Status::NothingFits { broken }
-    } else if stop.load(Ordering::Relaxed) {
-        Status::Interrupted
     } else {
         Status::Found
     };
-    let nearest = if front.is_empty() {
+    let nearest = if front.is_empty() && !stopped {
         nearest.map(Box::new)
     } else {
         None
@@ -375,16 +430,16 @@ impl Thoroughness {
                 levels: 5,
                 column_rounds: 8,
                 nodes: 60,
-                polish: polish(3, 15, (0, 0)),
+                polish: polish(2, 8, (4, 2)),
             },
             Effort::Normal => Thoroughness {
                 ladder: 12,
-                rounds: 3,
+                rounds: 2,
                 generations: 3,
                 levels: 6,
-                column_rounds: 20,
-                nodes: 150,
-                polish: polish(4, 25, (8, 6)),
+                column_rounds: 12,
+                nodes: 100,
+                polish: polish(3, 12, (6, 4)),
             },
             Effort::Thorough => Thoroughness {
                 ladder: 20,
@@ -402,7 +457,8 @@ impl Thoroughness {
 /// A first look at a spec, in well under a second.
 pub fn estimate(job: &Job) -> Estimate {
     let mut work = Work::default();
-    let pool = search::pool::sweep_at(job, Effort::Quick, &mut work, &|_, _| {});
+    let stop = AtomicBool::new(false);
+    let pool = search::pool::sweep_at(job, Effort::Quick, &mut work, &|_, _| {}, &stop);
     let wants = candidates::wants(job, 1.0);
     let all = Candidate::all(job, &wants, &pool);
     let ledger = Ledger::new(*job, &pool, &all, 1.0, overhead_limit(job.spec));
@@ -418,7 +474,6 @@ pub fn estimate(job: &Job) -> Estimate {
         .collect();
     let feeds = Feeds::of(&ledger, 5);
     let menu = Menu::of(&ledger, &feeds);
-    let stop = AtomicBool::new(false);
     let mut search = Search::new(&ledger, &menu, &stop);
     let first = search.first();
     let found = search.descend(first);

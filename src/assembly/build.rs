@@ -26,9 +26,8 @@ pub fn build(job: &Job, plan: &Plan, shapes: &[Shape]) -> Option<Network> {
                 }
             }
         };
-        let least_width = tech.mosfet().width.least.0;
         let bias = member.bias.and_then(|(current, parent)| {
-            let size = unit.bias_size(current, least_width)?.snapped(&tech);
+            let size = unit.bias_size(&tech, current)?.snapped(&tech);
             Some(BiasLeg {
                 feed: source(parent, current),
                 current,

@@ -3,7 +3,7 @@
 //! nothing is solved again.
 
 use crate::cells::solved::{Probe, Solved};
-use crate::cells::{CELLS, Size};
+use crate::cells::{CELLS, Size, bias_diode};
 use crate::device;
 use crate::network::Job;
 use crate::network::bench::of;
@@ -249,14 +249,12 @@ impl Candidate {
     pub fn input_area(&self, unit: f64, units: f64, bias: f64) -> f64 {
         let mut area = self.leg_area(unit, units);
         if let Some(b) = self.bias {
-            let width = b.width * bias;
-            let least = self.width_limits[0];
-            let (width, length) = if width >= least {
-                (width, b.length)
-            } else {
-                (least, b.length * least / width)
+            let per_ampere = Size {
+                width: b.width,
+                length: b.length,
             };
-            area += strip_area(&self.rule, width, length, 1.0);
+            let drawn = bias_diode(per_ampere, bias, self.width_limits[0], self.width_loss);
+            area += strip_area(&self.rule, drawn.width, drawn.length, 1.0);
         }
         if let (Some(volts), Some(card), true) =
             (self.resistor, &self.resistor_card, self.resistor_in_input)
@@ -338,6 +336,9 @@ fn fit<'p>(output: &Output, want: &Want, at: &impl Fn(f64) -> &'p Probe) -> Opti
     (fall > -PLAIN_FALL).then_some([end(low), end(high)])
 }
 
+/// Most units of a leg in a first estimate.
+const UNITS_ALONE: u32 = 40;
+
 /// Cells that can serve output `k` alone, with the least area of a leg, m^2; cheapest first.
 pub fn cells_for(candidates: &[Candidate], k: usize, want: &Want) -> Vec<(String, f64)> {
     let mut best: Vec<Option<f64>> = vec![None; CELLS.len()];
@@ -348,8 +349,11 @@ pub fn cells_for(candidates: &[Candidate], k: usize, want: &Want) -> Vec<(String
             let sigma = (e.variance_out / want.current).sqrt();
             e.error[0].abs().max(e.error[1].abs()) + want.sigma * sigma <= want.limit
         });
-        if bears && c.drawable(want.current, 1) {
-            let area = c.leg_area(want.current, 1.0);
+        // Large currents take several units, however wide one may be.
+        let units = (1..=UNITS_ALONE).find(|&n| c.drawable(want.current / f64::from(n), n));
+        if let (true, Some(n)) = (bears, units) {
+            let n = f64::from(n);
+            let area = c.leg_area(want.current / n, n);
             let least = best[c.cell].map_or(area, |b| b.min(area));
             best[c.cell] = Some(least);
         }

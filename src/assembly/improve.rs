@@ -266,6 +266,7 @@ impl<'s, 'a> Search<'s, 'a> {
             best.price = price;
             best.score = score;
             std::mem::swap(&mut self.base, &mut self.scratch);
+            self.clerk.settle(&mut self.base);
         }
         better
     }

@@ -13,7 +13,6 @@ use crate::network::probes::Pool;
 use crate::numeric::dispatch::{Work, widest};
 use crate::numeric::lanes::Lanes;
 use crate::spec::{Rail, Reference};
-use std::collections::HashMap;
 
 /// Groups of eight climates a plan can hold: five corners at three temperatures need two.
 const GROUPS: usize = 4;
@@ -118,6 +117,10 @@ pub struct Tally {
     families: Vec<Share>,
     outputs: Vec<Share>,
     absolute: [[Lanes; GROUPS]; 2],
+    /// Number of the pricing that filled this tally from scratch, 0 before any.
+    stamp: u64,
+    /// Where this tally differs from the one with the same stamp: families and outputs.
+    changed: (Vec<usize>, Vec<usize>),
 }
 
 /// What one family or one output adds to the price.
@@ -140,7 +143,30 @@ impl Tally {
             families: Vec::new(),
             outputs: Vec::new(),
             absolute: [[Lanes::ZERO; GROUPS]; 2],
+            stamp: 0,
+            changed: (Vec::new(), Vec::new()),
         }
+    }
+
+    /// Becomes a copy of `base`: by undoing its own changes where it is one but for those.
+    fn follow(&mut self, base: &Tally) {
+        if self.stamp == base.stamp && base.changed.0.is_empty() && base.changed.1.is_empty() {
+            for &f in &self.changed.0 {
+                self.lines[f] = base.lines[f];
+                self.families[f] = base.families[f];
+            }
+            for &k in &self.changed.1 {
+                self.outputs[k] = base.outputs[k];
+            }
+        } else {
+            self.lines.clone_from(&base.lines);
+            self.families.clone_from(&base.families);
+            self.outputs.clone_from(&base.outputs);
+            self.stamp = base.stamp;
+        }
+        self.absolute = base.absolute;
+        self.changed.0.clear();
+        self.changed.1.clear();
     }
 }
 
@@ -276,12 +302,41 @@ impl<'a> Ledger<'a> {
     }
 }
 
+/// What feeders do, by the family they are legs of and the child: tables by candidate.
+#[derive(Default)]
+struct Feeders {
+    /// By rail of the parent, parent, and twice the child (plus one for its bias leg).
+    rows: [Vec<Vec<Option<Box<FeederEnd>>>>; 2],
+    count: usize,
+}
+
+impl Feeders {
+    #[inline(always)]
+    fn get(&self, from: &Member, child: usize, bias: bool) -> Option<&FeederEnd> {
+        let row = self.rows[from.rail as usize].get(from.candidate)?;
+        row.get(2 * child + usize::from(bias))?.as_deref()
+    }
+
+    fn put(&mut self, from: &Member, child: usize, bias: bool, end: FeederEnd) {
+        let rows = &mut self.rows[from.rail as usize];
+        if rows.len() <= from.candidate {
+            rows.resize_with(from.candidate + 1, Vec::new);
+        }
+        let row = &mut rows[from.candidate];
+        let place = 2 * child + usize::from(bias);
+        if row.len() <= place {
+            row.resize_with(place + 1, || None);
+        }
+        row[place] = Some(Box::new(end));
+        self.count += 1;
+    }
+}
+
 /// Prices plans, and remembers what every pair of feeder and child does.
 pub struct Clerk<'l, 'a> {
     /// What plans are measured against.
     pub ledger: &'l Ledger<'a>,
-    // Looked up by key only, never walked: its order cannot reach a result.
-    feeders: HashMap<(Rail, usize, usize, bool), FeederEnd>,
+    feeders: Feeders,
     /// Plans priced so far.
     pub priced: u64,
 }
@@ -291,7 +346,7 @@ impl<'l, 'a> Clerk<'l, 'a> {
     pub fn new(ledger: &'l Ledger<'a>) -> Clerk<'l, 'a> {
         Clerk {
             ledger,
-            feeders: HashMap::new(),
+            feeders: Feeders::default(),
             priced: 0,
         }
     }
@@ -299,6 +354,9 @@ impl<'l, 'a> Clerk<'l, 'a> {
     /// Prices a plan from scratch.
     pub fn price(&mut self, plan: &Plan, tally: &mut Tally) -> Price {
         self.priced += 1;
+        tally.stamp = self.priced;
+        tally.changed.0.clear();
+        tally.changed.1.clear();
         self.remember(plan, None);
         widest(Pricing {
             clerk: self,
@@ -306,6 +364,14 @@ impl<'l, 'a> Clerk<'l, 'a> {
             tally,
             touched: None,
         })
+    }
+
+    /// Makes a repriced tally the base of further ones.
+    pub fn settle(&mut self, tally: &mut Tally) {
+        self.priced += 1;
+        tally.stamp = self.priced;
+        tally.changed.0.clear();
+        tally.changed.1.clear();
     }
 
     /// Prices a plan that differs from the one `base` was made for in family `touched` alone: its
@@ -319,10 +385,7 @@ impl<'l, 'a> Clerk<'l, 'a> {
     ) -> Price {
         self.priced += 1;
         self.remember(plan, Some(touched));
-        scratch.lines.clone_from(&base.lines);
-        scratch.families.clone_from(&base.families);
-        scratch.outputs.clone_from(&base.outputs);
-        scratch.absolute = base.absolute;
+        scratch.follow(base);
         widest(Pricing {
             clerk: self,
             plan,
@@ -400,8 +463,8 @@ impl<'l, 'a> Clerk<'l, 'a> {
 
     /// Makes sure every feeder pair of the plan is known.
     fn remember(&mut self, plan: &Plan, mut touched: Option<usize>) {
-        if self.feeders.len() > KEPT {
-            self.feeders.clear();
+        if self.feeders.count > KEPT {
+            self.feeders = Feeders::default();
             touched = None;
         }
         for (f, member) in plan.members.iter().enumerate() {
@@ -415,10 +478,10 @@ impl<'l, 'a> Clerk<'l, 'a> {
                     continue;
                 }
                 let from = &plan.members[parent];
-                let key = (from.rail, from.candidate, member.candidate, bias);
-                if !self.feeders.contains_key(&key) {
+                let known = self.feeders.get(from, member.candidate, bias).is_some();
+                if !known {
                     let end = self.feeder(from, member, bias);
-                    self.feeders.insert(key, end);
+                    self.feeders.put(from, member.candidate, bias, end);
                 }
             }
         }
@@ -517,11 +580,17 @@ impl Work for Pricing<'_, '_, '_> {
                 || feeds_changed(member.parent)
                 || feeds_changed(member.bias.and_then(|b| b.1));
             if price_changed || below {
+                if touched.is_some() {
+                    tally.changed.0.push(f);
+                }
                 family(clerk, plan, tally, f, groups);
             }
         }
         for (k, &leg) in plan.legs.iter().enumerate() {
             if is(&dirty, leg) {
+                if touched.is_some() {
+                    tally.changed.1.push(k);
+                }
                 output(ledger, plan, tally, k, leg, groups);
             }
         }
@@ -589,7 +658,10 @@ fn family(clerk: &Clerk, plan: &Plan, tally: &mut Tally, f: usize, groups: usize
         let from_unit = from.current / f64::from(from.units);
         let (units, rounding) = units_for(current, from_unit);
         share.area += by.leg_area(from_unit, f64::from(units));
-        let end = &clerk.feeders[&(from.rail, from.candidate, member.candidate, which == 1)];
+        let end = clerk
+            .feeders
+            .get(from, member.candidate, which == 1)
+            .expect("every pair of the plan is remembered before it is priced");
         if which == 0 {
             let up = &tally.lines[parent];
             for g in 0..groups {

@@ -141,7 +141,7 @@ fn refine_scales(desk: &RefCell<Desk>, swarm: (usize, u64), seed: u64) {
     let like = desk.borrow().shapes();
     let before = desk.borrow_mut().cost();
     let n = like.len();
-    let bounds = (vec![-0.12; n], vec![0.12; n]);
+    let bounds = (vec![-0.02; n], vec![0.02; n]);
     // The generator is set explicitly: the default one would seed itself from the system.
     let solver =
         ParticleSwarm::new(bounds, swarm.0).with_rng_generator(Pcg64Mcg::seed_from_u64(seed));
@@ -226,12 +226,15 @@ pub fn polish<'a>(
     for round in 0..effort.rounds {
         if round > 0 || effort.iterations > 0 {
             slp::descend(&mut desk.borrow_mut(), if round == 0 { 0.25 } else { 0.08 });
-            let step = [0.15, 0.08, 0.04, 0.03][round.min(3)];
-            if effort.swarm.0 > 0 && round == 0 {
+            // The swarm and the simplex finish what straight lines leave: kinks where the worst
+            // corner changes.
+            if round + 2 == effort.rounds && effort.swarm.0 > 0 {
                 refine_scales(&desk, effort.swarm, seed);
             }
-            for f in 0..plan.members.len() {
-                refine_family(&desk, f, effort.iterations, step);
+            if round + 2 == effort.rounds {
+                for f in 0..plan.members.len() {
+                    refine_family(&desk, f, effort.iterations, 0.03);
+                }
             }
         }
         let shapes = desk.borrow().shapes();

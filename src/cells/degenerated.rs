@@ -69,11 +69,25 @@ impl Cell for Degenerated {
             mirror: feed.input,
             cascode: None,
         };
-        leg(draw, "input", unit, units, &lines, feed.input);
+        leg(
+            draw,
+            ["input mirror", "input degeneration resistor"],
+            unit,
+            units,
+            &lines,
+            feed.input,
+        );
         lines
     }
     fn output(&self, draw: &mut Draw, unit: &Unit, units: u32, lines: &Lines, pin: usize) {
-        leg(draw, "output", unit, units, lines, pin);
+        leg(
+            draw,
+            ["output mirror", "output degeneration resistor"],
+            unit,
+            units,
+            lines,
+            pin,
+        );
     }
     fn least_output(&self, tech: &Tech, shape: &Shape) -> f64 {
         shape.drop + tech.saturation(shape.inversion)
@@ -83,20 +97,17 @@ impl Cell for Degenerated {
     }
 }
 
-fn leg(draw: &mut Draw, side: &str, unit: &Unit, units: u32, lines: &Lines, drain: usize) {
+fn leg(
+    draw: &mut Draw,
+    roles: [&'static str; 2],
+    unit: &Unit,
+    units: u32,
+    lines: &Lines,
+    drain: usize,
+) {
     let rail = draw.rail_node();
     let foot = draw.inner("s", unit.expected.drain);
-    draw.mos(
-        &format!("{side} mirror"),
-        [drain, lines.mirror, foot],
-        unit.mirror,
-        units,
-    );
+    draw.mos(roles[0], [drain, lines.mirror, foot], unit.mirror, units);
     let body = unit.resistor.expect("a degenerated unit has a resistor");
-    draw.resistor(
-        &format!("{side} degeneration resistor"),
-        [foot, rail],
-        body,
-        units,
-    );
+    draw.resistor(roles[1], [foot, rail], body, units);
 }

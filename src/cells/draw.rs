@@ -11,7 +11,7 @@ pub struct Origin {
     /// Index of the family.
     pub family: usize,
     /// Role in words, such as "input mirror".
-    pub role: String,
+    pub role: &'static str,
     /// What the leg serves: nothing for an input leg, an output (index in the spec), or a family
     /// it feeds.
     pub serves: Serves,
@@ -65,7 +65,8 @@ pub struct Draw {
     pub rail: Rail,
     /// Family being drawn.
     pub family: usize,
-    /// Name prefix of elements and inner nodes being drawn.
+    /// Name prefix of elements and inner nodes being drawn; without one they stay nameless, which
+    /// serves a drawing nobody reads.
     pub tag: String,
     /// What the leg being drawn serves.
     pub serves: Serves,
@@ -99,7 +100,11 @@ impl Draw {
 
     /// A new inner node of the leg being drawn.
     pub fn inner(&mut self, name: &str, volts: f64) -> Node {
-        let full = format!("{}_{name}", self.tag);
+        let full = if self.tag.is_empty() {
+            String::new()
+        } else {
+            format!("{}_{name}", self.tag)
+        };
         self.node(full, volts)
     }
 
@@ -111,19 +116,27 @@ impl Draw {
         }
     }
 
-    fn origin(&self, role: &str) -> Origin {
+    fn origin(&self, role: &'static str) -> Origin {
         Origin {
             family: self.family,
-            role: role.to_owned(),
+            role,
             serves: self.serves,
         }
     }
 
+    /// Element name: its kind, the tag, and the initials of its role.
+    fn name(&self, kind: char, role: &str) -> String {
+        if self.tag.is_empty() {
+            return String::new();
+        }
+        let initials: String = role.split(' ').filter_map(|w| w.chars().next()).collect();
+        format!("{kind}{}_{initials}", self.tag)
+    }
+
     /// A transistor of the rail's polarity, bulk on the rail.
-    pub fn mos(&mut self, role: &str, ends: [Node; 3], size: Size, units: u32) {
+    pub fn mos(&mut self, role: &'static str, ends: [Node; 3], size: Size, units: u32) {
         let [drain, gate, source] = ends;
-        let short: String = role.split(' ').filter_map(|w| w.chars().next()).collect();
-        let name = format!("M{}_{short}", self.tag);
+        let name = self.name('M', role);
         self.mos_origin.push(self.origin(role));
         self.netlist.mos.push(Mos {
             name,
@@ -142,9 +155,8 @@ impl Draw {
     }
 
     /// A resistor of `units` equal bodies in parallel.
-    pub fn resistor(&mut self, role: &str, ends: [Node; 2], body: Body, units: u32) {
-        let short: String = role.split(' ').filter_map(|w| w.chars().next()).collect();
-        let name = format!("R{}_{short}", self.tag);
+    pub fn resistor(&mut self, role: &'static str, ends: [Node; 2], body: Body, units: u32) {
+        let name = self.name('R', role);
         self.resistor_origin.push(self.origin(role));
         self.netlist.resistors.push(Resistance {
             name,
@@ -167,7 +179,7 @@ impl Draw {
             Rail::Sink => (other, node),
             Rail::Source => (node, other),
         };
-        let name = format!("{}_i{}", self.tag, self.netlist.currents.len());
+        let name = self.name('I', "current");
         self.netlist.currents.push(CurrentSource {
             name,
             from,

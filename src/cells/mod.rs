@@ -167,22 +167,29 @@ pub struct Expected {
 
 impl Unit {
     /// The bias diode drawn for a bias current, A.
-    pub fn bias_size(&self, current: f64, least_width: f64) -> Option<Size> {
-        self.bias.map(|b| {
-            let width = b.width * current;
-            if width >= least_width {
-                Size {
-                    width,
-                    length: b.length,
-                }
-            } else {
-                // Too narrow to draw: the same aspect ratio, longer.
-                Size {
-                    width: least_width,
-                    length: b.length * least_width / width,
-                }
-            }
-        })
+    pub fn bias_size(&self, tech: &Tech, current: f64) -> Option<Size> {
+        let mosfet = tech.mosfet();
+        let loss = device::width_loss(mosfet);
+        self.bias
+            .map(|b| bias_diode(b, current, mosfet.width.least.0, loss))
+    }
+}
+
+/// A bias diode of `per_ampere` effective width, drawn for `current`: no narrower than
+/// `least_width`; where the current asks for less, longer at the same aspect ratio.
+pub fn bias_diode(per_ampere: Size, current: f64, least_width: f64, width_loss: f64) -> Size {
+    let effective = per_ampere.width * current;
+    let drawn = effective + width_loss;
+    if drawn >= least_width {
+        return Size {
+            width: drawn,
+            length: per_ampere.length,
+        };
+    }
+    let stretch = (least_width - width_loss) / effective;
+    Size {
+        width: least_width,
+        length: per_ampere.length * stretch,
     }
 }
 

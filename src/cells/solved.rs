@@ -6,7 +6,8 @@
 use super::draw::{Draw, Feed, Lines};
 use super::{CELLS, Shape, Tech, Unit};
 use crate::circuit::dc::{Circuit, State};
-use crate::circuit::netlist::{Netlist, Node, VoltageSource};
+use crate::circuit::netlist::{Mos, Netlist, Node, Resistance, VoltageSource};
+use crate::circuit::small_signal::Study;
 use crate::device::bank::Bank;
 use crate::device::{self, Conditions};
 use crate::numeric::lanes::{Lanes, WIDTH};
@@ -131,11 +132,16 @@ pub struct Solver<'a> {
     groups: Vec<Group>,
     expected: Template,
     bank: Bank<'a>,
+    study: Study,
+    listed: Vec<usize>,
+    listed_resistors: Vec<usize>,
     /// DC solutions made so far, one per climate and circuit.
     pub solutions: u64,
 }
 
 struct Group {
+    /// Expected voltages of the shape whose solution `state` holds.
+    solved_for: Option<Vec<f64>>,
     resistor: Lanes,
     circuit: Circuit,
     state: State,
@@ -155,25 +161,18 @@ struct Template {
 
 fn draw_template(
     cell: usize,
-    rail: Rail,
+    tech: &Tech,
     unit: &Unit,
     current: f64,
-    width_loss: f64,
     probes: &[f64],
 ) -> (Draw, Template) {
     let mut draw = Draw::new();
-    draw.rail = rail;
-    draw.tag = "in".to_owned();
-    let input = draw.node("in", unit.expected.input);
+    draw.rail = tech.rail;
+    let input = draw.node("", unit.expected.input);
     draw.current(input, current);
-    let bias = unit.bias.map(|size| {
-        let node = draw.node("bias", unit.expected.cascode);
+    let bias = unit.bias_size(tech, current).map(|size| {
+        let node = draw.node("", unit.expected.cascode);
         draw.current(node, current);
-        let size = super::Size {
-            // Drawn: at small currents the effective width may be less than the loss itself.
-            width: size.width * current + width_loss,
-            length: size.length,
-        };
         (node, size)
     });
     let lines: Lines = CELLS[cell].input(&mut draw, unit, 1, &Feed { input, bias });
@@ -181,9 +180,8 @@ fn draw_template(
     let input_resistors = draw.netlist.resistors.len();
     let mut pins = Vec::new();
     let mut legs = Vec::new();
-    for (k, &volts) in probes.iter().enumerate() {
-        draw.tag = format!("out{k}");
-        let pin = draw.node(format!("pin{k}"), volts);
+    for &volts in probes {
+        let pin = draw.node("", volts);
         let (m, r) = (draw.netlist.mos.len(), draw.netlist.resistors.len());
         CELLS[cell].output(&mut draw, unit, 1, &lines, pin);
         legs.push((
@@ -232,6 +230,9 @@ impl<'a> Solver<'a> {
                 legs: Vec::new(),
             },
             bank: Bank::new(tech.mosfet(), tech.nominal(), groups_of(&tech, climates)),
+            study: Study::default(),
+            listed: Vec::new(),
+            listed_resistors: Vec::new(),
             solutions: 0,
         }
     }
@@ -269,6 +270,7 @@ impl<'a> Solver<'a> {
             })
             .expect("a template has grounded sources only");
             self.groups.push(Group {
+                solved_for: None,
                 resistor,
                 circuit,
                 state: State::default(),
@@ -282,14 +284,8 @@ impl<'a> Solver<'a> {
         let unit = cell
             .unit(&self.tech, shape, self.current)
             .ok_or(Failure::NoSize)?;
-        let (draw, template) = draw_template(
-            self.cell,
-            self.tech.rail,
-            &unit,
-            self.current,
-            device::width_loss(self.tech.mosfet()),
-            &self.probes,
-        );
+        let (draw, template) =
+            draw_template(self.cell, &self.tech, &unit, self.current, &self.probes);
         self.expected = template;
         if self.groups.is_empty() {
             self.make_groups(&draw.netlist);
@@ -346,15 +342,29 @@ impl<'a> Solver<'a> {
         {
             lanes.conductance = f64::from(r.units) / (r.ohms * group.resistor);
         }
-        group.state.volts.clear();
-        group
-            .state
-            .volts
-            .extend(draw.expected.iter().map(|&(_, v)| Lanes::splat(sign * v)));
+        // From the last shape's solution, moved by what the closed forms say has changed: a
+        // neighbour on a grid or in a polish is then a few iterations away.
+        let expected: Vec<f64> = draw.expected.iter().map(|&(_, v)| sign * v).collect();
+        match &group.solved_for {
+            Some(last) => {
+                for ((v, new), old) in group.state.volts.iter_mut().zip(&expected).zip(last) {
+                    *v += Lanes::splat(new - old);
+                }
+            }
+            None => {
+                group.state.volts.clear();
+                group
+                    .state
+                    .volts
+                    .extend(expected.iter().map(|&v| Lanes::splat(v)));
+            }
+        }
+        group.solved_for = None;
         self.solutions += WIDTH as u64;
         if !group.circuit.solve(&mut group.state) {
             return Err(Failure::NotConverged);
         }
+        group.solved_for = Some(expected);
         group.circuit.linearise(&mut group.state);
         let (circuit, state) = (&group.circuit, &group.state);
         let volts = |node: Node| state.volts[node] * sign;
@@ -366,46 +376,49 @@ impl<'a> Solver<'a> {
         }
         let target = self.current;
         let tech = &self.tech;
+        let netlist = &draw.netlist;
+        let (inputs, input_resistors) = (self.expected.input_mos, self.expected.input_resistors);
+        // Variance of one device's current error, in the squares of its own sensitivities.
+        let sizes = |size: &Mos| device::mismatch_of(tech.mosfet(), size.width, size.length);
+        let body = |r: &Resistance| match &tech.card.resistor {
+            Some(card) => device::resistor_mismatch(card, r.width, r.ohms),
+            None => 0.0,
+        };
         for (k, probe) in solved.probes.iter_mut().enumerate() {
+            let (leg, leg_resistors) = self.expected.legs[k];
+            self.listed.clear();
+            self.listed.extend((0..inputs).chain(leg[0]..leg[1]));
+            self.listed_resistors.clear();
+            self.listed_resistors
+                .extend((0..input_resistors).chain(leg_resistors[0]..leg_resistors[1]));
             let pin = self.expected.pins[k];
-            let current = circuit.current_from(state, pin) * sign;
+            circuit.study(
+                state,
+                pin,
+                &self.listed,
+                &self.listed_resistors,
+                &mut self.study,
+            );
+            let study = &self.study;
+            let current = study.current * sign;
             let error = current / target - 1.0;
             widen(&mut probe.error, error);
-            let conductance = circuit.conductance_at(state, pin);
             // A leg without output conductance has no finite Early voltage.
-            let early = current / conductance.max(Lanes::splat(1e-30));
+            let early = current / study.conductance.max(Lanes::splat(1e-30));
             probe.early = probe.early.min(early.smallest());
-            let sensitivity = circuit.sensitivity(state, pin);
-            let mos = |range: std::ops::Range<usize>| {
-                let mut sum = Lanes::ZERO;
-                for i in range {
-                    let m = &draw.netlist.mos[i];
-                    let (vt, beta) = device::mismatch_of(tech.mosfet(), m.width, m.length);
-                    let a = sensitivity.threshold[i] * vt;
-                    let b = sensitivity.gain[i] * beta;
-                    sum += a * a + b * b;
-                }
-                sum
-            };
-            let resistors = |range: std::ops::Range<usize>| {
-                let mut sum = Lanes::ZERO;
-                let Some(card) = &tech.card.resistor else {
-                    return sum;
-                };
-                for i in range {
-                    let r = &draw.netlist.resistors[i];
-                    let a =
-                        sensitivity.resistor[i] * device::resistor_mismatch(card, r.width, r.ohms);
-                    sum += a * a;
-                }
-                sum
-            };
-            let (mos_range, resistor_range) = self.expected.legs[k];
+            let mut sums = [Lanes::ZERO; 2];
+            for (place, &i) in self.listed.iter().enumerate() {
+                let (vt, beta) = sizes(&netlist.mos[i]);
+                let a = study.sensitivity.threshold[place] * vt;
+                let b = study.sensitivity.gain[place] * beta;
+                sums[usize::from(place >= inputs)] += a * a + b * b;
+            }
+            for (place, &i) in self.listed_resistors.iter().enumerate() {
+                let a = study.sensitivity.resistor[place] * body(&netlist.resistors[i]);
+                sums[usize::from(place >= input_resistors)] += a * a;
+            }
             let scale = target / (current * current);
-            let input =
-                mos(0..self.expected.input_mos) + resistors(0..self.expected.input_resistors);
-            let output =
-                mos(mos_range[0]..mos_range[1]) + resistors(resistor_range[0]..resistor_range[1]);
+            let [input, output] = sums;
             let (variance_in, variance_out) = (input * scale, output * scale);
             probe.variance_in = probe.variance_in.max(variance_in.largest());
             probe.variance_out = probe.variance_out.max(variance_out.largest());

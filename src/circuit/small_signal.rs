@@ -4,6 +4,7 @@
 
 use super::dc::{Circuit, State};
 use super::netlist::Node;
+use crate::device::Point;
 use crate::numeric::dispatch::{Work, widest};
 use crate::numeric::lanes::{Lanes, Mask};
 
@@ -221,6 +222,159 @@ impl Circuit {
         }
         out
     }
+}
+
+/// Everything about one pin, in buffers that are used again: its current, the conductance there,
+/// and the sensitivity of the current to chosen devices.
+#[derive(Debug, Clone, Default)]
+pub struct Study {
+    /// Current from the pin into the circuit, A.
+    pub current: Lanes,
+    /// dI/dV, S.
+    pub conductance: Lanes,
+    /// Sensitivities, in the order the devices were listed.
+    pub sensitivity: Sensitivity,
+    c: Vec<Lanes>,
+    y: Vec<Lanes>,
+}
+
+impl Circuit {
+    /// Studies a known node `pin` by one adjoint solution. `mos` and `resistors` list the devices
+    /// whose sensitivity is asked for; every device on the pin must be among them, and no current
+    /// source may hang on it. Call [`Circuit::linearise`] first.
+    pub fn study(
+        &self,
+        state: &State,
+        pin: Node,
+        mos: &[usize],
+        resistors: &[usize],
+        study: &mut Study,
+    ) {
+        widest(Studying {
+            circuit: self,
+            state,
+            pin,
+            mos,
+            resistors,
+            study,
+        });
+    }
+}
+
+struct Studying<'w> {
+    circuit: &'w Circuit,
+    state: &'w State,
+    pin: Node,
+    mos: &'w [usize],
+    resistors: &'w [usize],
+    study: &'w mut Study,
+}
+
+impl Work for Studying<'_> {
+    type Answer = ();
+    #[inline(always)]
+    fn run(self) {
+        let Studying {
+            circuit,
+            state,
+            pin,
+            mos,
+            resistors,
+            study,
+        } = self;
+        let n = circuit.unknowns();
+        let Study {
+            current,
+            conductance,
+            sensitivity,
+            c,
+            y,
+        } = study;
+        for list in [&mut *c, &mut *y] {
+            list.clear();
+            list.resize(n, Lanes::ZERO);
+        }
+        *current = Lanes::ZERO;
+        // How the pin's current follows the unknown nodes.
+        for &k in mos {
+            let (m, p) = (&circuit.mos[k], &state.points[k]);
+            let [d, _, s, b] = m.nodes;
+            if d != pin && s != pin && b != pin {
+                continue;
+            }
+            let (channel, impact) = slopes(p);
+            let on = |node: Node| if node == pin { 1.0 } else { 0.0 };
+            let (through, into_bulk) = (on(d) - on(s), on(d) - on(b));
+            *current += (p.id * through + p.ib * into_bulk) * m.sign;
+            for j in 0..4 {
+                if let Some(r) = circuit.row(m.nodes[j]) {
+                    c[r] += channel[j] * through + impact[j] * into_bulk;
+                }
+            }
+        }
+        for &k in resistors {
+            let r = &circuit.resistors[k];
+            for (here, there) in [(r.nodes[0], r.nodes[1]), (r.nodes[1], r.nodes[0])] {
+                if here == pin {
+                    *current += (state.volts[here] - state.volts[there]) * r.conductance;
+                    if let Some(row) = circuit.row(there) {
+                        c[row] -= r.conductance;
+                    }
+                }
+            }
+        }
+        circuit.plan(state).solve_transposed(&state.factors, c, y);
+        let weight = |node: Node| match circuit.row(node) {
+            Some(r) => -y[r],
+            None if node == pin => Lanes::ONE,
+            None => Lanes::ZERO,
+        };
+        // What a change inside a device does: at its own ends, and through them everywhere.
+        *conductance = Lanes::ZERO;
+        sensitivity.threshold.clear();
+        sensitivity.gain.clear();
+        sensitivity.resistor.clear();
+        for &k in mos {
+            let (m, p) = (&circuit.mos[k], &state.points[k]);
+            let [d, _, s, b] = m.nodes;
+            let through = weight(d) - weight(s);
+            let into_bulk = weight(d) - weight(b);
+            let [bg, ..] = p.ib_slopes;
+            sensitivity
+                .threshold
+                .push((-p.gm * through - bg * into_bulk) * m.sign);
+            sensitivity
+                .gain
+                .push((p.id * through + p.ib * into_bulk) * m.sign);
+            if m.nodes.contains(&pin) {
+                let (channel, impact) = slopes(p);
+                for j in 0..4 {
+                    if m.nodes[j] == pin {
+                        *conductance += channel[j] * through + impact[j] * into_bulk;
+                    }
+                }
+            }
+        }
+        for &k in resistors {
+            let r = &circuit.resistors[k];
+            let [a, b] = r.nodes;
+            let through = weight(a) - weight(b);
+            let i = (state.volts[a] - state.volts[b]) * r.conductance;
+            sensitivity.resistor.push(-i * through);
+            let on = |node: Node| if node == pin { 1.0 } else { 0.0 };
+            *conductance += r.conductance * through * (on(a) - on(b));
+        }
+    }
+}
+
+/// Slopes of a device's channel and impact currents over drain, gate, source and bulk.
+#[inline(always)]
+fn slopes(p: &Point) -> ([Lanes; 4], [Lanes; 4]) {
+    let [bg, bd, bs] = p.ib_slopes;
+    (
+        [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm],
+        [bd, bg, bs, -(bd + bg + bs)],
+    )
 }
 
 struct Factorise<'a> {

@@ -92,15 +92,15 @@ impl Charge {
         let ratio = t / nominal;
         let ln_ratio = ratio.ln();
         let ut = Lanes::from_fn(|i| thermal_voltage(lanes[i].temperature));
+        let (threshold, threshold_tc) = (law.threshold.at(length), law.threshold_tc.at(length));
         let vt0 = Lanes::from_fn(|i| {
-            law.threshold.at(length)
-                - law.threshold_tc.at(length) * (lanes[i].temperature - nominal)
-                + lanes[i].threshold_shift
+            threshold - threshold_tc * (lanes[i].temperature - nominal) + lanes[i].threshold_shift
         });
         // phi(T) = phi T/T0 - 3 UT ln(T/T0) - Eg(T0) T/T0 + Eg(T)  (EPFL-EKV v2.6 report).
+        let phi_nominal = law.phi.at(length);
         let phi = Lanes::from_fn(|i| {
             let r = ratio.0[i];
-            law.phi.at(length) * r - 3.0 * ut.0[i] * ln_ratio.0[i] - band_gap(nominal) * r
+            phi_nominal * r - 3.0 * ut.0[i] * ln_ratio.0[i] - band_gap(nominal) * r
                 + band_gap(lanes[i].temperature)
         })
         .max(Lanes::splat(0.2));

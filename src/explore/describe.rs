@@ -345,7 +345,7 @@ fn devices(job: &Job, network: &Network, fine: &Bench, nominal: usize) -> Vec<De
         rows.push(DeviceRow {
             name: m.name.clone(),
             family: drawing.names[origin.family].clone(),
-            role: role(&origin.role, origin.serves),
+            role: role(origin.role, origin.serves),
             output,
             model: mosfet.deck_model.clone(),
             width: m.width,
@@ -371,7 +371,7 @@ fn devices(job: &Job, network: &Network, fine: &Bench, nominal: usize) -> Vec<De
             rows.push(DeviceRow {
                 name: r.name.clone(),
                 family: drawing.names[origin.family].clone(),
-                role: role(&origin.role, origin.serves),
+                role: role(origin.role, origin.serves),
                 output,
                 model: "resistor".to_owned(),
                 width: r.width,

@@ -22,6 +22,9 @@ impl Figure for Area {
         "Sum over all unit devices and resistors, all legs of counted outputs included, of the \
          card's area rule: drawn size plus its fixed border. No wiring, no guard rings."
     }
+    fn source(&self) -> &'static str {
+        "our own definition, from the card's area rule"
+    }
     fn of(&self, subject: &Subject) -> Value {
         Value {
             value: subject.area,

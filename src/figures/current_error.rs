@@ -24,6 +24,10 @@ impl Figure for CurrentError {
          variances of all devices on the path from the reference added by adjoint sensitivities. \
          The largest over the outputs that have an accuracy; over all where none has."
     }
+    fn source(&self) -> &'static str {
+        "Pelgrom, Duinmaijer, Welbers, IEEE JSSC 24, 1989 (mismatch); Director, Rohrer, IEEE \
+         Trans. Circuit Theory 16, 1969 (adjoint sensitivities)"
+    }
     fn of(&self, subject: &Subject) -> Value {
         let asked = subject.outputs.iter().any(|o| o.limit.is_some());
         let key = |w: &super::Worst| {

@@ -23,6 +23,9 @@ impl Figure for ErrorShare {
          meets the spec, 50 % is twice as accurate as asked everywhere. Outputs without an \
          accuracy do not count."
     }
+    fn source(&self) -> &'static str {
+        "our own definition, on top of current_error"
+    }
     fn of(&self, subject: &Subject) -> Value {
         let share = |w: &super::Worst| w.limit.map_or(f64::NEG_INFINITY, |l| w.error / l);
         match worst_output(subject, share) {

@@ -24,6 +24,9 @@ impl Figure for HeadroomMargin {
          within 1 % of the current in the middle of its range. The margin is the low end of the \
          range minus the headroom; the smallest counts."
     }
+    fn source(&self) -> &'static str {
+        "our own definition; headroom as a term of the trade is common practice, no source"
+    }
     fn of(&self, subject: &Subject) -> Value {
         let outputs = &subject.job.spec.outputs;
         let mut margins = outputs

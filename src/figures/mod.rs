@@ -36,6 +36,8 @@ pub trait Figure: Sync {
     fn summary(&self) -> &'static str;
     /// How it is computed.
     fn definition(&self) -> &'static str;
+    /// Where it is published, or that it is our own.
+    fn source(&self) -> &'static str;
     /// Its value for a network.
     fn of(&self, subject: &Subject) -> Value;
 }

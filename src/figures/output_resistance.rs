@@ -22,6 +22,9 @@ impl Figure for OutputResistance {
         "Per output, dV/dI at the low end of its voltage range at the worst corner, from the \
          factorised Jacobian of the whole network; the least counts."
     }
+    fn source(&self) -> &'static str {
+        "Gray, Hurst, Lewis, Meyer, Analysis and Design of Analog Integrated Circuits, ch. 4"
+    }
     fn of(&self, subject: &Subject) -> Value {
         match worst_output(subject, |w| -w.resistance) {
             Some((k, value)) => Value {

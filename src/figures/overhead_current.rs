@@ -22,6 +22,9 @@ impl Figure for OverheadCurrent {
         "Currents of all input, bias and feeder legs, the reference included, at the worst corner. \
          A feeder and the input leg it feeds carry the same current, which counts once."
     }
+    fn source(&self) -> &'static str {
+        "our own definition"
+    }
     fn of(&self, subject: &Subject) -> Value {
         let mut value = Value {
             value: 0.0,

@@ -22,6 +22,9 @@ impl Figure for Power {
     fn definition(&self) -> &'static str {
         "Worst overhead current of all corners times the upper end of the supply range."
     }
+    fn source(&self) -> &'static str {
+        "our own definition, on top of overhead_current"
+    }
     fn of(&self, subject: &Subject) -> Value {
         let amps = OverheadCurrent.of(subject);
         Value {

@@ -7,6 +7,7 @@ use crate::cells::draw::Serves;
 use crate::cells::solved::{groups_of, resistor_factor};
 use crate::circuit::dc::{Circuit, State};
 use crate::circuit::netlist::{CurrentSource, GROUND, Netlist, VoltageSource};
+use crate::circuit::small_signal::{Sensitivity, Study};
 use crate::device::bank::Bank;
 use crate::device::{mismatch_of, resistor_mismatch};
 use crate::numeric::lanes::{Lanes, WIDTH};
@@ -33,6 +34,8 @@ struct Placed {
     /// Transistors whose drains deliver the current of each family's input and bias legs.
     feeders: Vec<usize>,
     reference_legs: usize,
+    all_mos: Vec<usize>,
+    all_resistors: Vec<usize>,
 }
 
 /// A network that Newton and both continuations could not solve at some corner.
@@ -120,6 +123,8 @@ impl<'a> Bench<'a> {
             placed.sourced = sourced;
         } else {
             let feeders = feeders(&drawing);
+            let all_mos = (0..sourced.mos.len()).collect();
+            let all_resistors = (0..sourced.resistors.len()).collect();
             self.placed = Some(Placed {
                 drawing,
                 sourced,
@@ -127,6 +132,8 @@ impl<'a> Bench<'a> {
                 states: Vec::new(),
                 feeders,
                 reference_legs,
+                all_mos,
+                all_resistors,
             });
         }
         let placed = self.placed.as_mut().expect("placed just above");
@@ -297,12 +304,14 @@ impl<'a> Bench<'a> {
             outputs: vec![Vec::with_capacity(count); outputs],
             common: Vec::with_capacity(count),
         };
+        let mut study = Study::default();
         for g in 0..placed.circuits.len() {
             let lanes = (count - g * WIDTH).min(WIDTH);
             let reference = self.reference_lanes(placed, &placed.circuits[g], &placed.states[g]);
             let by_reference = self.reference_sensitivity(placed, g);
             for (k, output) in self.job.spec.outputs.iter().enumerate() {
-                let read = self.read_output(placed, g, k, output, reference, by_reference.as_ref());
+                let by = by_reference.as_ref();
+                let read = self.read_output(placed, g, k, output, reference, by, &mut study);
                 readings.outputs[k].extend(&read[..lanes]);
             }
             let (circuit, state) = (&placed.circuits[g], &placed.states[g]);
@@ -324,11 +333,7 @@ impl<'a> Bench<'a> {
     }
 
     /// d ln(reference)/d(device), for a reference that the network makes itself.
-    fn reference_sensitivity(
-        &self,
-        placed: &Placed,
-        g: usize,
-    ) -> Option<crate::circuit::small_signal::Sensitivity> {
+    fn reference_sensitivity(&self, placed: &Placed, g: usize) -> Option<Sensitivity> {
         let r = placed.drawing.reference_resistor?;
         let (circuit, state) = (&placed.circuits[g], &placed.states[g]);
         let resistor = &circuit.resistors[r];
@@ -352,12 +357,14 @@ impl<'a> Bench<'a> {
         k: usize,
         output: &Output,
         reference: Lanes,
-        by_reference: Option<&crate::circuit::small_signal::Sensitivity>,
+        by_reference: Option<&Sensitivity>,
+        study: &mut Study,
     ) -> [Reading; WIDTH] {
         let (circuit, state) = (&placed.circuits[g], &placed.states[g]);
         let netlist = &placed.drawing.draw.netlist;
         let pin = placed.drawing.pins[k][0];
-        let current = circuit.current_from(state, pin) * sign(output.rail);
+        circuit.study(state, pin, &placed.all_mos, &placed.all_resistors, study);
+        let current = study.current * sign(output.rail);
         let nominal = self.job.spec.target(output).0;
         let to_ratio = of(output) == AccuracyOf::Ratio;
         let target = if to_ratio {
@@ -366,7 +373,7 @@ impl<'a> Bench<'a> {
             Lanes::splat(nominal)
         };
         let systematic = current / target - 1.0;
-        let s = circuit.sensitivity(state, pin);
+        let s = &study.sensitivity;
         let inverse = sign(output.rail) / current;
         let by_reference = by_reference.filter(|_| to_ratio);
         let mut variance = [Lanes::ZERO; 3];
@@ -396,7 +403,7 @@ impl<'a> Bench<'a> {
                 variance[2] += a * a;
             }
         }
-        let conductance = circuit.conductance_at(state, pin);
+        let conductance = study.conductance;
         std::array::from_fn(|i| Reading {
             current: current.0[i],
             systematic: systematic.0[i],

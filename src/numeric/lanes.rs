@@ -130,6 +130,12 @@ impl Mask {
     }
 }
 
+impl Default for Lanes {
+    fn default() -> Self {
+        Lanes::ZERO
+    }
+}
+
 impl Lanes {
     /// Zero in every lane.
     pub const ZERO: Lanes = Lanes([0.0; WIDTH]);

@@ -54,6 +54,37 @@ pub fn write(folder: &Path, files: &[(PathBuf, Vec<u8>)]) -> Result<(), WriteErr
     write_watched(folder, files, &mut |_| Ok(()))
 }
 
+/// Says early whether a report could be written into `folder`, before the work it reports. Leaves
+/// nothing behind, and makes no folder.
+///
+/// `names` are files that the report will hold whatever the work brings.
+///
+/// # Errors
+/// The [`WriteError`] that [`write()`] would end in as things stand.
+pub fn check(folder: &Path, names: &[&str]) -> Result<(), WriteError> {
+    // The nearest folder that exists is where everything else would be made.
+    let absolute = std::path::absolute(folder).map_err(system("find", folder))?;
+    let exists = fs::symlink_metadata(&absolute).is_ok();
+    let around = if exists {
+        let place = Place::new(folder)?;
+        let names = names.iter().map(|name| (*name).to_owned()).collect();
+        place.check_foreign(&names)?;
+        place.parent
+    } else {
+        let mut up = absolute.ancestors().skip(1);
+        let around = up.find(|path| fs::symlink_metadata(path).is_ok());
+        around.unwrap_or(Path::new("/")).to_owned()
+    };
+    if !around.is_dir() {
+        return Err(WriteError::NotAFolder(around));
+    }
+    tempfile::Builder::new()
+        .prefix(".biasloom-")
+        .tempdir_in(&around)
+        .map(drop)
+        .map_err(system("make a folder in", &around))
+}
+
 /// Points at which a write can be cut short; the tests do so.
 #[derive(Debug, Clone, Copy, PartialEq)]
 enum Step {

@@ -10,6 +10,7 @@ use crate::network::work::Work;
 use crate::spec::{Effort, Rail};
 use rayon::prelude::*;
 use std::collections::BTreeMap;
+use std::sync::atomic::{AtomicBool, AtomicU64, Ordering};
 
 /// Shapes handed to one task: fixed, so that the order of work never depends on the threads.
 const CHUNK: usize = 64;
@@ -17,9 +18,9 @@ const CHUNK: usize = 64;
 /// The grid of one cell.
 fn grid(tech: &Tech, cell: usize, effort: Effort, headroom: f64) -> Vec<Shape> {
     let (lengths, inversions, cascodes, drops) = match effort {
-        Effort::Quick => (10, 9, 2, 2),
-        Effort::Normal => (16, 13, 3, 3),
-        Effort::Thorough => (26, 21, 4, 4),
+        Effort::Quick => (9, 8, 2, 1),
+        Effort::Normal => (12, 10, 2, 2),
+        Effort::Thorough => (20, 16, 3, 3),
     };
     let mosfet = tech.mosfet();
     let (shortest, longest) = (mosfet.length.least.0, mosfet.length.most.0);
@@ -101,16 +102,22 @@ pub fn could_serve(job: &Job, tech: &Tech, shape: &Shape) -> bool {
 }
 
 /// Sweeps and solves at the spec's effort. `advance` hears of shapes done and shapes in all.
-pub fn sweep(job: &Job, work: &mut Work, advance: &(dyn Fn(u64, u64) + Sync)) -> Pool {
-    sweep_at(job, job.spec.search.effort, work, advance)
+pub fn sweep(
+    job: &Job,
+    work: &mut Work,
+    advance: &(dyn Fn(u64, u64) + Sync),
+    stop: &AtomicBool,
+) -> Pool {
+    sweep_at(job, job.spec.search.effort, work, advance, stop)
 }
 
-/// Sweeps and solves at an effort.
+/// Sweeps and solves at an effort. Once `stop` is set, what is not yet solved is left out.
 pub fn sweep_at(
     job: &Job,
     effort: Effort,
     work: &mut Work,
     advance: &(dyn Fn(u64, u64) + Sync),
+    stop: &AtomicBool,
 ) -> Pool {
     let climates = climates(job);
     let current = job.spec.reference.current().0;
@@ -145,14 +152,17 @@ pub fn sweep_at(
     }
     let total: u64 = tasks.iter().map(|t| t.2.len() as u64).sum();
     advance(0, total);
-    let done = std::sync::atomic::AtomicU64::new(0);
+    let done = AtomicU64::new(0);
     let results: Vec<(Vec<Result<Solved, Failure>>, u64)> = tasks
         .par_iter()
         .map(|(rail, cell, shapes)| {
+            if stop.load(Ordering::Relaxed) {
+                return (Vec::new(), 0);
+            }
             let tech = job.tech([Rail::Sink, Rail::Source][*rail]);
             let mut solver = Solver::new(tech, *cell, current, &probes[*rail].volts, &climates);
             let out = shapes.iter().map(|s| solver.solve(s)).collect();
-            let so_far = done.fetch_add(shapes.len() as u64, std::sync::atomic::Ordering::Relaxed);
+            let so_far = done.fetch_add(shapes.len() as u64, Ordering::Relaxed);
             advance(so_far + shapes.len() as u64, total);
             (out, solver.solutions)
         })

@@ -102,7 +102,7 @@ fn random_unit(rng: &mut Pcg64, tech: &Tech, cell: usize) -> Option<(Unit, f64)>
         (mosfet.width.least.0..=mosfet.width.most.0).contains(&size.width)
             && size.length <= mosfet.length.most.0
     };
-    let bias = unit.bias_size(current, mosfet.width.least.0);
+    let bias = unit.bias_size(tech, current);
     let all = [Some(unit.mirror), unit.cascode, bias];
     all.into_iter()
         .flatten()
@@ -125,8 +125,7 @@ pub fn random_mirror(rng: &mut Pcg64, card: &Card, cell: usize, rail: Rail) -> M
     draw.tag = "in".into();
     let input = draw.node("in", unit.expected.input);
     draw.current(input, amps);
-    let least = tech.mosfet().width.least.0;
-    let bias = unit.bias_size(current, least).map(|size| {
+    let bias = unit.bias_size(&tech, current).map(|size| {
         let node = draw.node("bias", unit.expected.cascode);
         draw.current(node, current);
         (node, size)
