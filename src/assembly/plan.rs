@@ -694,9 +694,8 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
         ..Share::default()
     };
     if c.outputs[k].is_none() {
+        // Never as good as an output served, and still better the nearer it comes.
         share.excess += 1.0;
-        tally.outputs[k] = share;
-        return;
     }
     if want.limit.is_infinite() {
         tally.outputs[k] = share;

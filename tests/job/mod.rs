@@ -2,10 +2,14 @@
 
 mod build;
 mod catalogue;
+mod demos;
+mod determinism;
 mod front;
 mod outside;
 mod paper;
 mod probe;
+mod remeasure;
+mod robustness;
 mod screening;
 mod structure;
 

@@ -6,6 +6,7 @@ use biasloom::assembly::build::{build, shapes};
 use biasloom::assembly::candidates::{Candidate, wants};
 use biasloom::assembly::plan::{Clerk, Ledger, Member, Plan, Tally};
 use biasloom::cells::CELLS;
+use biasloom::network::Job;
 use biasloom::network::bench::Bench;
 use biasloom::network::corners::verified;
 use biasloom::network::measure::measure;
@@ -16,8 +17,14 @@ use biasloom::spec::{Effort, Rail};
 use biasloom::units::Metre;
 use rand::{Rng, SeedableRng};
 use rand_pcg::Pcg64;
+use std::sync::atomic::AtomicBool;
 
 const UNITS: [u32; 8] = [1, 2, 3, 4, 5, 8, 10, 20];
+
+fn swept(job: &Job) -> Pool {
+    let stop = AtomicBool::new(false);
+    sweep(job, &mut Work::default(), &|_, _| {}, &stop)
+}
 
 /// Random plans over a ledger.
 struct Dice<'l, 'a> {
@@ -142,9 +149,7 @@ fn finely_drawn(name: &str) -> (Task, impl Fn(&Task) -> Pool) {
     let mut task = Task::shipped(name, Effort::Quick);
     task.card.nmos.grid = Metre(1e-15);
     task.card.pmos.grid = Metre(1e-15);
-    (task, |task: &Task| {
-        sweep(&task.job(), &mut Work::default(), &|_, _| {})
-    })
+    (task, |task: &Task| swept(&task.job()))
 }
 
 /// The paper adds up relative errors and variances along a path, to first order, and reads feeders
@@ -260,7 +265,7 @@ fn a_change_of_one_family_is_priced_exactly() {
             };
         }
         let job = task.job();
-        let pool = sweep(&job, &mut Work::default(), &|_, _| {});
+        let pool = swept(&job);
         let all = Candidate::all(&job, &wants(&job, 1.0), &pool);
         let ledger = Ledger::new(job, &pool, &all, 1.0, 3.0 * job.spec.reference.current().0);
         let mut dice = Dice {
