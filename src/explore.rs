@@ -15,7 +15,7 @@ use crate::assembly::workshop::{Refined, Workshop};
 use crate::network::bench::Bench;
 use crate::network::probes::Pool;
 use crate::network::{Job, corners, measure};
-use crate::spec::{Effort, Spec};
+use crate::spec::Effort;
 use crate::{figures, front, search};
 use rayon::prelude::*;
 use serde::Serialize;
@@ -396,16 +396,6 @@ fn breach_of(b: &Broken) -> f64 {
     }
 }
 
-/// Largest overhead current the limits allow, A.
-fn overhead_limit(spec: &Spec) -> f64 {
-    let by_current = spec.limits.overhead_current.map_or(f64::INFINITY, |l| l.0);
-    let by_power = spec
-        .limits
-        .power
-        .map_or(f64::INFINITY, |l| l.0 / spec.supply.most.0);
-    by_current.min(by_power)
-}
-
 /// Scales of the accuracy limits to look at: one, or several where accuracy is traded.
 fn tightenings(job: &Job) -> Vec<f64> {
     let traded = |name: &str| job.spec.trade.iter().any(|t| t == name);
@@ -487,7 +477,7 @@ pub fn estimate(job: &Job) -> Estimate {
     let pool = search::pool::sweep_at(job, Effort::Quick, &mut work, &|_, _| {}, &stop);
     let wants = candidates::wants(job, 1.0);
     let all = Candidate::all(job, &wants, &pool);
-    let ledger = Ledger::new(*job, &pool, &all, 1.0, overhead_limit(job.spec));
+    let ledger = Ledger::new(*job, &pool, &all, 1.0, job.spec.overhead_limit());
     let outputs = job
         .spec
         .outputs

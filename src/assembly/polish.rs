@@ -288,8 +288,12 @@ pub fn polish<'a>(
                 candidate.measured.area < b.measured.area
             }
         });
+        let hopeless = repair && candidate.excess > HOPELESS;
         if better {
             best = Some(candidate);
+        }
+        if hopeless {
+            break;
         }
     }
     let evaluations = desk.borrow().evaluations;
@@ -313,7 +317,7 @@ fn correct(desk: &mut Desk, measured: &Measured, tighten: f64, inside: f64) {
             // Only a shortfall is corrected: a leg stiffer than asked needs no stiffer limit.
             let short = least.0 / worst.resistance;
             if short > 1.0 {
-                desk.wants[k].early = desk.wants[k].early.max(asked) * short * 1.001;
+                desk.wants[k].early = desk.wants[k].early.max(asked) * short / inside;
             }
         }
     }

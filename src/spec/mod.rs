@@ -210,6 +210,16 @@ impl Spec {
             Target::Ratio(ratio) => Amp(ratio * self.reference.current().0),
         }
     }
+    /// Largest overhead current that the limits of current and power allow, A; infinite where there
+    /// is neither.
+    pub fn overhead_limit(&self) -> f64 {
+        let by_current = self.limits.overhead_current.map_or(f64::INFINITY, |l| l.0);
+        let by_power = self
+            .limits
+            .power
+            .map_or(f64::INFINITY, |l| l.0 / self.supply.most.0);
+        by_current.min(by_power)
+    }
 }
 
 /// JSON Schema of a spec's file.

@@ -2,9 +2,15 @@
 
 mod build;
 mod catalogue;
+mod demos;
+mod determinism;
 mod front;
 mod outside;
+mod paper;
 mod probe;
+mod remeasure;
+mod robustness;
+mod screening;
 mod structure;
 
 use biasloom::explore::{Outcome, Silent, explore};

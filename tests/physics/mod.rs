@@ -4,7 +4,7 @@ mod convergence;
 mod devices;
 mod draft;
 mod golden;
-mod mirrors;
+pub(crate) mod mirrors;
 mod networks;
 mod numeric;
 mod support;
