@@ -100,7 +100,7 @@ fn networks(
     work: &mut Work,
 ) -> Vec<Polished> {
     // Nominal currents are what a plan adds up; at the worst corner they are a little more.
-    let limit = overhead_limit(job.spec) * 0.997;
+    let limit = job.spec.overhead_limit() * 0.997;
     let mut shop = Workshop::open(*job, pool, tighten, limit, effort.levels, stop);
     let seed = job.spec.search.seed.wrapping_mul(1_000_003);
     observer.stage(
@@ -343,7 +343,7 @@ fn finish(job: &Job, drawn: Vec<Polished>, mut work: Work, stop: &AtomicBool) ->
                 .collect()
         })
         .collect();
-    let mut front: Vec<NetworkReport> = front::nondominated(&points)
+    let mut front: Vec<NetworkReport> = front::distinct(&points, NEARLY_SAME)
         .into_iter()
         .map(|i| fits[i].clone())
         .collect();
@@ -405,6 +405,9 @@ fn tightenings(job: &Job) -> Vec<f64> {
         vec![1.0]
     }
 }
+
+/// Networks nearer to each other than this share in every traded figure are one point of the front.
+const NEARLY_SAME: f64 = 0.005;
 
 /// Next rung of the budget ladder.
 const LADDER_STEP: f64 = 0.87;

@@ -85,6 +85,9 @@ pub struct Want {
     pub absolute: bool,
     /// Least output resistance times current, V; 0 where none is asked.
     pub early: f64,
+    /// Where no accuracy is asked: how far the current at the low end may be below that in the
+    /// middle of the range, fraction.
+    pub fall: f64,
 }
 
 /// The outputs as the assembly sees them; `tighten` scales every accuracy limit.
@@ -110,6 +113,8 @@ pub fn wants(job: &Job, tighten: f64) -> Vec<Want> {
                 early: o
                     .output_resistance
                     .map_or(0.0, |r| r.0 * job.spec.target(o).0),
+                // A little inside: the whole network is held to the full fall.
+                fall: 0.9 * PLAIN_FALL,
             }
         })
         .collect()
@@ -339,8 +344,7 @@ fn fit<'p>(output: &Output, want: &Want, at: &impl Fn(f64) -> &'p Probe) -> Opti
     // accuracy is asked.
     let middle = at((output.range.least.0 + output.range.most.0) / 2.0);
     let fall = (1.0 + low.error[0]) / (1.0 + middle.error[0]) - 1.0;
-    // A little inside: the whole network is held to the full fall.
-    (fall > -0.9 * PLAIN_FALL).then_some([end(low), end(high)])
+    (fall > -want.fall).then_some([end(low), end(high)])
 }
 
 /// Most units of a leg in a first estimate.

@@ -6,7 +6,6 @@ use super::plan::{Clerk, Ledger, Plan, Tally};
 use crate::cells::solved::{Solved, Solver};
 use crate::cells::{CELLS, Shape};
 use crate::network::corners;
-use crate::network::measure::PLAIN_FALL;
 use crate::network::probes::Pool;
 use crate::numeric::scalar::{exp, ln};
 use crate::spec::Rail;
@@ -205,7 +204,7 @@ impl<'l, 'a> Desk<'l, 'a> {
                 let middle = &solved.probes[probes.index(middle)];
                 let fall = 1.0 - (1.0 + low.error[0]) / (1.0 + middle.error[0]);
                 // A share of the permitted fall, smooth through zero.
-                limit(fall / (0.85 * PLAIN_FALL) - 1.0);
+                limit(fall / (0.95 * want.fall) - 1.0);
             }
             if want.early > 0.0 {
                 limit(ln(want.early / low.early.max(1e-9)));

@@ -15,7 +15,7 @@ use super::slp;
 use crate::cells::Shape;
 use crate::cells::solved::Solved;
 use crate::network::bench::Bench;
-use crate::network::measure::{Measured, measure, trim_reference};
+use crate::network::measure::{Measured, PLAIN_FALL, measure, trim_reference};
 use crate::network::{Job, Network};
 use crate::numeric::scalar::exp;
 use argmin::core::{CostFunction, Error, Executor, State};
@@ -29,6 +29,8 @@ use std::cell::RefCell;
 const INSIDE: f64 = 0.9995;
 /// Further rounds for a network that is not inside its limits after all.
 const EXTRA: usize = 8;
+/// Excess beyond which short steps will not get there.
+const HOPELESS: f64 = 0.05;
 
 /// How hard to polish.
 #[derive(Debug, Clone, Copy)]
@@ -182,6 +184,9 @@ pub fn excess(job: &Job, measured: &Measured, pin: [f64; 2], tighten: f64) -> f6
         if let Some(limit) = worst.limit {
             sum += (worst.error / (limit * tighten) - 1.0).max(0.0);
         }
+        if worst.limit.is_none() {
+            sum += (worst.fall / PLAIN_FALL - 1.0).max(0.0);
+        }
         if let Some(least) = output.output_resistance {
             sum += (least.0 / worst.resistance - 1.0).max(0.0);
         }
@@ -288,7 +293,7 @@ pub fn polish<'a>(
                 candidate.measured.area < b.measured.area
             }
         });
-        let hopeless = repair && candidate.excess > HOPELESS;
+        let hopeless = round >= effort.rounds && candidate.excess > HOPELESS;
         if better {
             best = Some(candidate);
         }
@@ -311,6 +316,9 @@ fn correct(desk: &mut Desk, measured: &Measured, tighten: f64, inside: f64) {
             if worst.error > 0.0 && paper > 0.0 {
                 desk.wants[k].limit = (limit * tighten * inside) * (paper / worst.error);
             }
+        }
+        if worst.limit.is_none() && worst.fall > PLAIN_FALL {
+            desk.wants[k].fall *= PLAIN_FALL * inside / worst.fall;
         }
         if let Some(least) = output.output_resistance {
             let asked = desk.ledger.wants[k].early;
