@@ -99,7 +99,8 @@ fn networks(
     stop: &AtomicBool,
     work: &mut Work,
 ) -> Vec<Polished> {
-    let limit = job.spec.overhead_limit();
+    // Nominal currents are what a plan adds up; at the worst corner they are a little more.
+    let limit = job.spec.overhead_limit() * 0.997;
     let mut shop = Workshop::open(*job, pool, tighten, limit, effort.levels, stop);
     let seed = job.spec.search.seed.wrapping_mul(1_000_003);
     observer.stage(
@@ -113,10 +114,27 @@ fn networks(
     let assembled = shop.assembled(limit, &suggested, effort.nodes);
     count(work, assembled.as_ref().map(|a| a.1));
     let starts: Vec<&Plan> = assembled.iter().map(|a| &a.0).collect();
-    let top = shop.search(limit, &starts, true, effort.rounds, seed);
+    let tops: Vec<Scored> = (0..effort.tops)
+        .into_par_iter()
+        .map(|i| {
+            // One from the MILP's network, the others from scratch.
+            let starts: &[&Plan] = if i == 0 { &starts } else { &[] };
+            shop.search(
+                limit,
+                starts,
+                i > 0,
+                effort.rounds,
+                seed.wrapping_add(7919 * i),
+            )
+        })
+        .collect();
     step();
-    // The overhead that the least area wants, where nothing bounds it.
-    let most = limit.min(top.price.overhead);
+    let top = tops
+        .iter()
+        .fold(&tops[0], |a, b| if b.score < a.score { b } else { a })
+        .clone();
+    // From the limit down, or from twice what the least area wants where nothing bounds it.
+    let most = limit.min(2.0 * top.price.overhead);
     let mut budgets: Vec<f64> = (0..effort.ladder)
         .map(|i| most * LADDER_STEP.powi(i as i32))
         .collect();
@@ -125,7 +143,8 @@ fn networks(
         .enumerate()
         .map(|(i, &budget)| {
             let seed = seed.wrapping_add(1 + i as u64);
-            let found = shop.search(budget, &[&top.plan], true, effort.rounds, seed);
+            let start = &tops[i % tops.len()].plan;
+            let found = shop.search(budget, &[&top.plan, start], true, effort.rounds, seed);
             step();
             found
         })
@@ -223,6 +242,8 @@ fn networks(
 /// Moves rungs that found nothing of their own into the widest gaps of the front: an epsilon
 /// sweep whose steps follow the front. Budgets stay in falling order, each with its best so far.
 fn spread(budgets: &mut Vec<f64>, best: &mut Vec<Scored>) {
+    /// An excess that the final polish settles.
+    const NEARLY: f64 = 2e-3;
     /// Rungs closer than this (ratio) would find the same network again.
     const CLOSE: f64 = 1.03;
     let points: Vec<Vec<f64>> = best
@@ -231,7 +252,7 @@ fn spread(budgets: &mut Vec<f64>, best: &mut Vec<Scored>) {
         .collect();
     let kept: Vec<usize> = front::nondominated(&points)
         .into_iter()
-        .filter(|&i| best[i].price.excess == 0.0)
+        .filter(|&i| best[i].price.excess < NEARLY)
         .collect();
     if kept.is_empty() {
         return;
@@ -322,7 +343,7 @@ fn finish(job: &Job, drawn: Vec<Polished>, mut work: Work, stop: &AtomicBool) ->
                 .collect()
         })
         .collect();
-    let mut front: Vec<NetworkReport> = front::nondominated(&points)
+    let mut front: Vec<NetworkReport> = front::distinct(&points, NEARLY_SAME)
         .into_iter()
         .map(|i| fits[i].clone())
         .collect();
@@ -385,6 +406,9 @@ fn tightenings(job: &Job) -> Vec<f64> {
     }
 }
 
+/// Networks nearer to each other than this share in every traded figure are one point of the front.
+const NEARLY_SAME: f64 = 0.005;
+
 /// Next rung of the budget ladder.
 const LADDER_STEP: f64 = 0.87;
 
@@ -392,6 +416,8 @@ const LADDER_STEP: f64 = 0.87;
 struct Thoroughness {
     /// Rungs of the budget ladder.
     ladder: usize,
+    /// Searches from scratch before the ladder.
+    tops: u64,
     /// Restarts of the local search per rung and generation.
     rounds: usize,
     /// Generations of refinement and recombination.
@@ -415,6 +441,7 @@ impl Thoroughness {
         match effort {
             Effort::Quick => Thoroughness {
                 ladder: 6,
+                tops: 2,
                 rounds: 1,
                 generations: 1,
                 levels: 5,
@@ -424,6 +451,7 @@ impl Thoroughness {
             },
             Effort::Normal => Thoroughness {
                 ladder: 12,
+                tops: 6,
                 rounds: 2,
                 generations: 3,
                 levels: 6,
@@ -433,6 +461,7 @@ impl Thoroughness {
             },
             Effort::Thorough => Thoroughness {
                 ladder: 20,
+                tops: 16,
                 rounds: 15,
                 generations: 6,
                 levels: 8,

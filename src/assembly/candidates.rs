@@ -9,8 +9,13 @@ use crate::network::Job;
 use crate::network::bench::of;
 use crate::network::measure::PLAIN_FALL;
 use crate::network::probes::{Pool, Probes};
+use crate::numeric::scalar::ln;
 use crate::process::AreaRule;
 use crate::spec::{AccuracyOf, Output, Rail, Reference};
+
+/// Sizes on paper may miss a drawing limit or an output resistance by this share: descents end on
+/// the limit itself, drawing snaps to it, and the whole network is held to it exactly.
+const HAIR: f64 = 4e-3;
 
 /// A drawn device whose width grows with the unit current.
 #[derive(Debug, Clone, Copy)]
@@ -80,6 +85,9 @@ pub struct Want {
     pub absolute: bool,
     /// Least output resistance times current, V; 0 where none is asked.
     pub early: f64,
+    /// Where no accuracy is asked: how far the current at the low end may be below that in the
+    /// middle of the range, fraction.
+    pub fall: f64,
 }
 
 /// The outputs as the assembly sees them; `tighten` scales every accuracy limit.
@@ -105,6 +113,8 @@ pub fn wants(job: &Job, tighten: f64) -> Vec<Want> {
                 early: o
                     .output_resistance
                     .map_or(0.0, |r| r.0 * job.spec.target(o).0),
+                // A little inside: the whole network is held to the full fall.
+                fall: 0.9 * PLAIN_FALL,
             }
         })
         .collect()
@@ -180,7 +190,8 @@ impl Candidate {
     pub fn drawable(&self, unit: f64, units: u32) -> bool {
         let wide_enough = self.strips.iter().flatten().all(|s| {
             let width = s.width * unit + self.width_loss;
-            width >= self.width_limits[0] && width <= self.width_limits[1]
+            width >= self.width_limits[0] * (1.0 - HAIR)
+                && width <= self.width_limits[1] * (1.0 + HAIR)
         });
         let resistor = match (self.resistor, &self.resistor_card) {
             (Some(volts), Some(card)) => {
@@ -189,7 +200,7 @@ impl Candidate {
                 } else {
                     1.0
                 };
-                volts / (unit * share) >= card.squares_min * card.sheet
+                volts / (unit * share) >= card.squares_min * card.sheet * (1.0 - HAIR)
             }
             _ => true,
         };
@@ -201,8 +212,8 @@ impl Candidate {
         let mut out = Vec::new();
         for s in self.strips.iter().flatten() {
             let width = s.width * unit + self.width_loss;
-            out.push((self.width_limits[0] / width).ln());
-            out.push((width / self.width_limits[1]).ln());
+            out.push(ln(self.width_limits[0] / width));
+            out.push(ln(width / self.width_limits[1]));
         }
         if let (Some(volts), Some(card)) = (self.resistor, &self.resistor_card) {
             let share = if self.resistor_in_input {
@@ -211,7 +222,7 @@ impl Candidate {
                 1.0
             };
             let ohms = volts / (unit * share);
-            out.push((card.squares_min * card.sheet / ohms).ln());
+            out.push(ln(card.squares_min * card.sheet / ohms));
         }
         out
     }
@@ -322,7 +333,7 @@ fn fit<'p>(output: &Output, want: &Want, at: &impl Fn(f64) -> &'p Probe) -> Opti
         variance_out: p.variance_out,
     };
     let (low, high) = (at(output.range.least.0), at(output.range.most.0));
-    if low.early < want.early {
+    if low.early < want.early * (1.0 - HAIR) {
         return None;
     }
     if want.limit.is_finite() {
@@ -333,7 +344,7 @@ fn fit<'p>(output: &Output, want: &Want, at: &impl Fn(f64) -> &'p Probe) -> Opti
     // accuracy is asked.
     let middle = at((output.range.least.0 + output.range.most.0) / 2.0);
     let fall = (1.0 + low.error[0]) / (1.0 + middle.error[0]) - 1.0;
-    (fall > -PLAIN_FALL).then_some([end(low), end(high)])
+    (fall > -want.fall).then_some([end(low), end(high)])
 }
 
 /// Most units of a leg in a first estimate.

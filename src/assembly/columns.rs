@@ -11,8 +11,10 @@
 
 use super::candidates::{Candidate, End, Want};
 use super::plan::{Ledger, units_for};
+use crate::numeric::scalar::powf;
 use crate::spec::Rail;
 use rayon::prelude::*;
+use std::collections::BTreeMap;
 
 /// Input units tried for a family.
 const UNITS: [u32; 12] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16, 20, 40];
@@ -87,7 +89,7 @@ impl Feeds {
         let mut variances = vec![0.0];
         let steps = resolution.max(2);
         for i in 0..steps {
-            variances.push(start * (end / start).powf(i as f64 / (steps - 1) as f64));
+            variances.push(start * powf(end / start, i as f64 / (steps - 1) as f64));
         }
         let errors = vec![
             0.0,
@@ -325,7 +327,7 @@ impl Scan<'_, '_> {
     /// Best columns of a chunk of candidates, by slot.
     fn chunk(&self, rail: usize, chunk: &[usize]) -> Vec<(f64, usize, Pick)> {
         let mut best = Vec::new();
-        let mut slots = std::collections::BTreeMap::new();
+        let mut slots = BTreeMap::new();
         for &index in chunk {
             self.candidate(
                 &self.ledger.candidates[rail][index],
@@ -381,7 +383,7 @@ impl Scan<'_, '_> {
         let by_reference = (self.ledger.copies > 1
             && c.rail == self.ledger.job.spec.reference.rail()
             && self.pin_ok(volts))
-        .then(|| Bias {
+        .then_some(Bias {
             amps: reference,
             takes: None,
             cost: self.prices.reference + self.prices.overhead * reference,
@@ -689,6 +691,10 @@ impl Scan<'_, '_> {
     }
 }
 
+/// A contest: kind (0 an output, else a level delivered to a class of input), which output or
+/// current, line, weight of the input leg.
+type Contest = (usize, usize, usize, usize);
+
 /// Candidates that are the cheapest for some output or some feeder at some input current and some
 /// level of the line: the ones worth pricing in every round. The full pool is priced at the end.
 pub fn shortlist(ledger: &Ledger, feeds: &Feeds) -> [Vec<usize>; 2] {
@@ -721,10 +727,7 @@ pub fn shortlist(ledger: &Ledger, feeds: &Feeds) -> [Vec<usize>; 2] {
             .currents
             .par_iter()
             .map(|&current| {
-                let mut contests: std::collections::BTreeMap<
-                    (usize, usize, usize, usize),
-                    Vec<(f64, usize)>,
-                > = std::collections::BTreeMap::new();
+                let mut contests: BTreeMap<Contest, Vec<(f64, usize)>> = BTreeMap::new();
                 let mut enter = |key, cost: f64, index: usize| {
                     let list = contests.entry(key).or_default();
                     let place = list.partition_point(|(c, _)| *c <= cost);

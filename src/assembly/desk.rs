@@ -6,12 +6,15 @@ use super::plan::{Clerk, Ledger, Plan, Tally};
 use crate::cells::solved::{Solved, Solver};
 use crate::cells::{CELLS, Shape};
 use crate::network::corners;
-use crate::network::measure::PLAIN_FALL;
 use crate::network::probes::Pool;
+use crate::numeric::scalar::{exp, ln};
 use crate::spec::Rail;
 use std::collections::BTreeMap;
 
 /// The paper model with shapes of its own: one slot per member.
+/// How far inside an error limit a descent aims: what straight lines miss, and a snapped length.
+const MARGIN: f64 = 5e-4;
+
 pub(super) struct Desk<'l, 'a> {
     pub(super) ledger: &'l Ledger<'a>,
     pub(super) plan: Plan,
@@ -183,7 +186,7 @@ impl<'l, 'a> Desk<'l, 'a> {
         let mut limits: Vec<(usize, f64)> = clerk
             .every_share(&self.plan, &tally)
             .iter()
-            .map(|(thing, share)| (*thing, share.max(1e-6).ln()))
+            .map(|(thing, share)| (*thing, ln(share.max(1e-6)) + MARGIN))
             .collect();
         let mut thing = 2 * self.wants.len();
         let mut limit = |value: f64| {
@@ -201,10 +204,10 @@ impl<'l, 'a> Desk<'l, 'a> {
                 let middle = &solved.probes[probes.index(middle)];
                 let fall = 1.0 - (1.0 + low.error[0]) / (1.0 + middle.error[0]);
                 // A share of the permitted fall, smooth through zero.
-                limit(fall / PLAIN_FALL - 1.0);
+                limit(fall / (0.95 * want.fall) - 1.0);
             }
             if want.early > 0.0 {
-                limit((want.early / low.early.max(1e-9)).ln());
+                limit(ln(want.early / low.early.max(1e-9)));
             }
         }
         for member in &self.plan.members {
@@ -236,9 +239,9 @@ impl<'l, 'a> Desk<'l, 'a> {
 /// 100 mV (drops).
 pub(super) fn variables(shape: &Shape) -> Vec<f64> {
     let parts = CELLS[shape.cell].parts();
-    let mut x = vec![shape.length.ln(), shape.inversion.ln()];
+    let mut x = vec![ln(shape.length), ln(shape.inversion)];
     if parts.cascode {
-        x.extend([shape.cascode_length.ln(), shape.cascode_inversion.ln()]);
+        x.extend([ln(shape.cascode_length), ln(shape.cascode_inversion)]);
     }
     if parts.drop {
         x.push(shape.drop * 10.0);
@@ -251,11 +254,11 @@ pub(super) fn shape_of(like: &Shape, x: &[f64]) -> Shape {
     let mut shape = *like;
     let mut x = x.iter().copied();
     let mut next = || x.next().unwrap_or_default();
-    shape.length = next().exp();
-    shape.inversion = next().exp().clamp(1e-3, 1e3);
+    shape.length = exp(next());
+    shape.inversion = exp(next()).clamp(1e-3, 1e3);
     if parts.cascode {
-        shape.cascode_length = next().exp();
-        shape.cascode_inversion = next().exp().clamp(1e-3, 1e3);
+        shape.cascode_length = exp(next());
+        shape.cascode_inversion = exp(next()).clamp(1e-3, 1e3);
     }
     if parts.drop {
         // A cascode's mirror device may be given a little less than its closed-form saturation

@@ -147,8 +147,8 @@ impl<'s, 'a> Search<'s, 'a> {
     }
 
     fn charged(&self, price: &Price) -> f64 {
-        // Any excess at all costs something, so that feasible beats nearly feasible.
-        let step = if price.excess > 0.0 { 0.02 } else { 0.0 };
+        // More than a polish settles costs something at once: feasible beats nearly feasible.
+        let step = if price.excess > 2e-3 { 0.02 } else { 0.0 };
         price.area + self.charge * (price.excess + step)
     }
 

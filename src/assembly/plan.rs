@@ -293,8 +293,8 @@ impl<'a> Ledger<'a> {
         let ohms = (middle - input).max(0.05) / current;
         let mut error = [[Lanes::ZERO; GROUPS]; 2];
         for (end, volts) in [supply.least.0, supply.most.0].into_iter().enumerate() {
-            for g in 0..self.groups() {
-                error[end][g] =
+            for (g, error) in error[end].iter_mut().enumerate().take(self.groups()) {
+                *error =
                     (volts - solved.input_lanes[g]) / (ohms * current * self.resistor[g]) - 1.0;
             }
         }
@@ -508,10 +508,10 @@ impl<'l, 'a> Clerk<'l, 'a> {
             variance_out: zero,
             worst: 0.0,
         };
-        for g in 0..ledger.groups() {
+        for (g, input) in input.iter().enumerate().take(ledger.groups()) {
             for (end, volts) in [supply.least.0, supply.most.0].into_iter().enumerate() {
-                for i in 0..8 {
-                    let Some((rung, t)) = probes.rung(volts - input[g].0[i]) else {
+                for (i, input) in input.0.iter().enumerate() {
+                    let Some((rung, t)) = probes.rung(volts - input) else {
                         // Hardly any voltage left: as good as no current.
                         out.error[end][g].0[i] = -1.0;
                         out.worst = 1.0;
@@ -694,8 +694,11 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
         ..Share::default()
     };
     if c.outputs[k].is_none() {
-        // Never as good as an output served, and still better the nearer it comes.
-        share.excess += 1.0;
+        // Worse than an output served at twice its limit, whatever the error on paper: a search
+        // should not spend on the accuracy of a leg that cannot live here.
+        share.excess += 1.5;
+        tally.outputs[k] = share;
+        return;
     }
     if want.limit.is_infinite() {
         tally.outputs[k] = share;
@@ -709,8 +712,21 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
         share.ends[end] = worst.largest() / want.limit;
     }
     share.error_share = share.ends[0].max(share.ends[1]);
-    share.excess += (share.error_share - 1.0).max(0.0);
+    share.excess += compressed(share.error_share - 1.0);
     tally.outputs[k] = share;
+}
+
+/// An excess as the search counts it: itself while it is small; beyond the limit's own size only
+/// its logarithm, lest one hopeless output drown what the others say.
+#[inline(always)]
+fn compressed(excess: f64) -> f64 {
+    if excess <= 0.0 {
+        0.0
+    } else if excess <= 1.0 {
+        excess
+    } else {
+        1.0 + crate::numeric::scalar::ln(excess)
+    }
 }
 
 /// Error of output `k` at one end of its range in one group of climates, at the worse supply.

@@ -15,8 +15,9 @@ use super::slp;
 use crate::cells::Shape;
 use crate::cells::solved::Solved;
 use crate::network::bench::Bench;
-use crate::network::measure::{Measured, measure, trim_reference};
+use crate::network::measure::{Measured, PLAIN_FALL, measure, trim_reference};
 use crate::network::{Job, Network};
+use crate::numeric::scalar::exp;
 use argmin::core::{CostFunction, Error, Executor, State};
 use argmin::solver::neldermead::NelderMead;
 use argmin::solver::particleswarm::ParticleSwarm;
@@ -24,8 +25,10 @@ use rand::SeedableRng;
 use rand_pcg::Pcg64Mcg;
 use std::cell::RefCell;
 
-/// Rounds at most after the last one, where no network met the spec yet.
-const REPAIRS: usize = 6;
+/// Limits on paper stay a hair inside, so that the last digits of a snapped size do not decide.
+const INSIDE: f64 = 0.9995;
+/// Further rounds for a network that is not inside its limits after all.
+const EXTRA: usize = 8;
 /// Excess beyond which short steps will not get there.
 const HOPELESS: f64 = 0.05;
 
@@ -83,7 +86,7 @@ fn apply_scales(desk: &mut Desk, like: &[Shape], x: &[f64]) -> bool {
         desk.put(
             f,
             &Shape {
-                length: shape.length * s.exp(),
+                length: shape.length * exp(*s),
                 ..*shape
             },
         )
@@ -173,19 +176,28 @@ fn refine_scales(desk: &RefCell<Desk>, swarm: (usize, u64), seed: u64) {
 }
 
 /// How far a measured network exceeds its limits: the sum over all of excess over limit.
-/// `tighten` scales accuracy limits, `budget` is the largest overhead current, A.
-pub fn excess(job: &Job, measured: &Measured, pin: [f64; 2], tighten: f64, budget: f64) -> f64 {
+/// `tighten` scales accuracy limits.
+pub fn excess(job: &Job, measured: &Measured, pin: [f64; 2], tighten: f64) -> f64 {
+    let limits = &job.spec.limits;
     let mut sum = 0.0;
     for (output, worst) in job.spec.outputs.iter().zip(&measured.worst) {
         if let Some(limit) = worst.limit {
             sum += (worst.error / (limit * tighten) - 1.0).max(0.0);
+        }
+        if worst.limit.is_none() {
+            sum += (worst.fall / PLAIN_FALL - 1.0).max(0.0);
         }
         if let Some(least) = output.output_resistance {
             sum += (least.0 / worst.resistance - 1.0).max(0.0);
         }
     }
     let overhead = measured.overhead.iter().copied().fold(0.0, f64::max);
-    sum += (overhead / budget - 1.0).max(0.0);
+    for limit in [
+        limits.overhead_current.map(|l| l.0),
+        limits.power.map(|l| l.0 / job.spec.supply.most.0),
+    ] {
+        sum += limit.map_or(0.0, |l| (overhead / l - 1.0).max(0.0));
+    }
     for &volts in &measured.pin {
         sum += (pin[0] - volts).max(0.0) + (volts - pin[1]).max(0.0);
     }
@@ -205,7 +217,7 @@ pub fn refine(
     Some((desk.solved(), desk.evaluations))
 }
 
-/// Polishes a plan. Returns the least network that met every limit when solved as a whole, or the
+/// Polishes a plan against the spec's own limits, accuracy scaled by `tighten`. Returns the least network that met every limit when solved as a whole, or the
 /// one that came closest; and the evaluations spent.
 pub fn polish<'a>(
     ledger: &Ledger<'a>,
@@ -228,17 +240,24 @@ pub fn polish<'a>(
     };
     desk.borrow_mut().charge = 10.0 * area;
     let mut best: Option<Polished> = None;
-    for round in 0..effort.rounds + REPAIRS {
-        let repair = round >= effort.rounds;
-        if repair {
-            // The grid and the last step moved a network that fills its limits a hair beyond one of
-            // them: short steps, further inside, until it fits.
+    let mut inside = INSIDE;
+    for round in 0..effort.rounds + EXTRA {
+        if round >= effort.rounds {
+            // Only to get inside: a little more room than last time, small steps.
             if best.as_ref().is_some_and(|b| b.excess == 0.0) {
                 break;
             }
-            slp::descend(&mut desk.borrow_mut(), 0.02);
-        } else if round > 0 || effort.iterations > 0 {
-            slp::descend(&mut desk.borrow_mut(), if round == 0 { 0.25 } else { 0.08 });
+            inside -= 1.0 - INSIDE;
+        }
+        if round > 0 || effort.iterations > 0 {
+            let radius = if round == 0 {
+                0.25
+            } else if round < effort.rounds {
+                0.08
+            } else {
+                0.03
+            };
+            slp::descend(&mut desk.borrow_mut(), radius);
             // The swarm and the simplex finish what straight lines leave: kinks where the worst
             // corner changes.
             if round + 2 == effort.rounds && effort.swarm.0 > 0 {
@@ -260,28 +279,13 @@ pub fn polish<'a>(
         let Ok(measured) = measure(&job, bench, &network) else {
             break;
         };
-        // The rung's own budget shaped the plan; at its worst corner the network may exceed that by
-        // a hair that no size can mend. What counts here is the spec's.
-        let over = excess(
-            &job,
-            &measured,
-            ledger.pin_to_ground(),
-            tighten,
-            job.spec.overhead_limit(),
-        );
+        let over = excess(&job, &measured, ledger.pin_to_ground(), tighten);
         let candidate = Polished {
             network,
             measured,
             excess: over,
         };
-        // A hair inside, so that the last digits of a snapped size do not decide.
-        let inside = if round + 1 < effort.rounds {
-            0.9995
-        } else {
-            0.998
-        };
-        let mut desk = desk.borrow_mut();
-        correct(&mut desk, &candidate.measured, tighten, inside);
+        correct(&mut desk.borrow_mut(), &candidate.measured, tighten, inside);
         let better = best.as_ref().is_none_or(|b| {
             if candidate.excess > 0.0 || b.excess > 0.0 {
                 candidate.excess < b.excess
@@ -289,7 +293,7 @@ pub fn polish<'a>(
                 candidate.measured.area < b.measured.area
             }
         });
-        let hopeless = repair && candidate.excess > HOPELESS;
+        let hopeless = round >= effort.rounds && candidate.excess > HOPELESS;
         if better {
             best = Some(candidate);
         }
@@ -301,8 +305,7 @@ pub fn polish<'a>(
     (best, evaluations)
 }
 
-/// Moves the limits on paper so that paper and whole circuit agree where they stand, limits
-/// for accuracies as far inside as `inside` says.
+/// Moves the limits on paper so that paper and whole circuit agree where they stand.
 fn correct(desk: &mut Desk, measured: &Measured, tighten: f64, inside: f64) {
     let shares = desk.shares();
     for (k, worst) in measured.worst.iter().enumerate() {
@@ -314,6 +317,9 @@ fn correct(desk: &mut Desk, measured: &Measured, tighten: f64, inside: f64) {
                 desk.wants[k].limit = (limit * tighten * inside) * (paper / worst.error);
             }
         }
+        if worst.limit.is_none() && worst.fall > PLAIN_FALL {
+            desk.wants[k].fall *= PLAIN_FALL * inside / worst.fall;
+        }
         if let Some(least) = output.output_resistance {
             let asked = desk.ledger.wants[k].early;
             // Only a shortfall is corrected: a leg stiffer than asked needs no stiffer limit.
@@ -322,10 +328,6 @@ fn correct(desk: &mut Desk, measured: &Measured, tighten: f64, inside: f64) {
                 desk.wants[k].early = desk.wants[k].early.max(asked) * short / inside;
             }
         }
-    }
-    let overhead = measured.overhead.iter().copied().fold(0.0, f64::max);
-    if overhead > desk.ledger.budget {
-        desk.budget *= 0.999 * desk.ledger.budget / overhead;
     }
     desk.renew();
 }

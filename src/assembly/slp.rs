@@ -8,6 +8,7 @@
 
 use super::desk::{Desk, shape_of, variables};
 use crate::cells::Shape;
+use crate::numeric::scalar::ln;
 use good_lp::{
     Expression, ProblemVariables, Solution, SolverModel, Variable, clarabel, constraint, variable,
 };
@@ -45,7 +46,7 @@ impl Point {
             }
             worst[thing] = worst[thing].max(value);
         }
-        let merit = area.ln() + CHARGE * worst.iter().sum::<f64>();
+        let merit = ln(area) + CHARGE * worst.iter().sum::<f64>();
         Some(Point {
             shapes,
             area,
@@ -171,7 +172,7 @@ fn differentiate(desk: &mut Desk, here: &Point) -> Slopes {
             y[i] += STEP;
             if desk.put(f, &shape_of(shape, &y)) {
                 let (a, l) = desk.limits();
-                by_area.push((a.ln() - area.ln()) / STEP);
+                by_area.push((ln(a) - ln(*area)) / STEP);
                 let slopes = l.iter().zip(limits).map(|(b, a)| (b.1 - a.1) / STEP);
                 by_limits.push(slopes.collect());
             } else {
@@ -206,7 +207,7 @@ fn propose(
                 .tech(desk.plan.members[f].rail)
                 .mosfet()
                 .length;
-            let (least, most) = (length.least.0.ln(), length.most.0.ln());
+            let (least, most) = (ln(length.least.0), ln(length.most.0));
             variables(shape)
                 .iter()
                 .enumerate()

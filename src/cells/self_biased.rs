@@ -73,7 +73,7 @@ impl Cell for SelfBiased {
             }),
             expected: Expected {
                 line: gate,
-                drain: drain,
+                drain,
                 cascode: top,
                 input: top,
             },

@@ -79,7 +79,7 @@ MB --+---| M3 ---|------| M4
             resistor: None,
             expected: Expected {
                 line: gate,
-                drain: drain,
+                drain,
                 cascode: top,
                 input: gate,
             },

@@ -10,6 +10,7 @@ pub mod constants;
 pub mod square;
 
 use crate::numeric::lanes::{Lanes, WIDTH};
+use crate::numeric::scalar;
 use crate::process::{Law, Mosfet, Resistor as ResistorCard};
 use charge::Charge;
 use square::Square;
@@ -189,7 +190,7 @@ pub fn gate_voltage(
     match &mosfet.law {
         Law::Charge(law) => {
             let q = inversion_charge(inversion);
-            let vp = source + ut * (2.0 * q + q.ln());
+            let vp = source + ut * (2.0 * q + scalar::ln(q));
             let (phi, gamma) = (law.phi.at(length), law.gamma.at(length));
             let body = law.body_gamma.at(length) - gamma;
             law.threshold.at(length)

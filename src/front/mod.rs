@@ -26,3 +26,23 @@ pub fn nondominated(points: &[Vec<f64>]) -> Vec<usize> {
         })
         .collect()
 }
+
+/// The non-dominated points, rising in their first component, without those that another one kept
+/// before them comes within `share` of in every component: a front that people can tell apart.
+pub fn distinct(points: &[Vec<f64>], share: f64) -> Vec<usize> {
+    let mut order = nondominated(points);
+    order.sort_by(|&a, &b| points[a][0].total_cmp(&points[b][0]).then(a.cmp(&b)));
+    let mut kept: Vec<usize> = Vec::new();
+    for i in order {
+        let near = |&j: &usize| {
+            points[j]
+                .iter()
+                .zip(&points[i])
+                .all(|(a, b)| *a <= b + share * b.abs())
+        };
+        if !kept.iter().any(near) {
+            kept.push(i);
+        }
+    }
+    kept
+}

@@ -309,9 +309,9 @@ impl<'a> Bench<'a> {
             let lanes = (count - g * WIDTH).min(WIDTH);
             let reference = self.reference_lanes(placed, &placed.circuits[g], &placed.states[g]);
             let by_reference = self.reference_sensitivity(placed, g);
-            for (k, output) in self.job.spec.outputs.iter().enumerate() {
+            for k in 0..outputs {
                 let by = by_reference.as_ref();
-                let read = self.read_output(placed, g, k, output, reference, by, &mut study);
+                let read = self.read_output(placed, g, k, reference, by, &mut study);
                 readings.outputs[k].extend(&read[..lanes]);
             }
             let (circuit, state) = (&placed.circuits[g], &placed.states[g]);
@@ -355,11 +355,11 @@ impl<'a> Bench<'a> {
         placed: &Placed,
         g: usize,
         k: usize,
-        output: &Output,
         reference: Lanes,
         by_reference: Option<&Sensitivity>,
         study: &mut Study,
     ) -> [Reading; WIDTH] {
+        let output = &self.job.spec.outputs[k];
         let (circuit, state) = (&placed.circuits[g], &placed.states[g]);
         let netlist = &placed.drawing.draw.netlist;
         let pin = placed.drawing.pins[k][0];

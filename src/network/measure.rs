@@ -30,6 +30,9 @@ pub struct Worst {
     pub resistance: f64,
     /// Corner of it, index.
     pub resistance_corner: usize,
+    /// Where no accuracy is asked: largest departure of the current at the low end from that in the
+    /// middle of the range, fraction; 0 elsewhere.
+    pub fall: f64,
 }
 
 /// A measured network.
@@ -83,6 +86,22 @@ pub fn measure(job: &Job, bench: &mut Bench, network: &Network) -> Result<Measur
         .enumerate()
         .map(|(k, output)| worst_of(job, output, &low.outputs[k], &high.outputs[k], corners))
         .collect();
+    let mut worst: Vec<Worst> = worst;
+    if worst.iter().any(|w| w.limit.is_none()) {
+        let corners = bench.corners().to_vec();
+        bench.solve(&ends(|o| (o.range.least.0 + o.range.most.0) / 2.0))?;
+        let middle = bench.currents();
+        for (k, worst) in worst
+            .iter_mut()
+            .enumerate()
+            .filter(|(_, w)| w.limit.is_none())
+        {
+            let falls = (0..corners.len())
+                .filter(|&c| corners[c].counts)
+                .map(|c| (low.outputs[k][c].current / middle[k][c] - 1.0).abs());
+            worst.fall = falls.fold(0.0, f64::max);
+        }
+    }
     Ok(Measured {
         area: network.area(job),
         overhead: low.common.iter().map(|c| c.overhead).collect(),
@@ -109,6 +128,7 @@ fn worst_of(
         headroom_corner: 0,
         resistance: f64::INFINITY,
         resistance_corner: 0,
+        fall: 0.0,
     };
     for (end, readings) in [low, high].into_iter().enumerate() {
         for (c, reading) in readings.iter().enumerate() {

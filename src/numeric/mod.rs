@@ -2,4 +2,5 @@
 
 pub mod dispatch;
 pub mod lanes;
+pub mod scalar;
 pub mod sparse;

@@ -1,6 +1,7 @@
 //! A parameter over drawn length, interpolated without overshoot.
 
 use super::Curve;
+use crate::numeric::scalar::ln;
 
 impl Curve {
     /// The same value at every length.
@@ -29,9 +30,9 @@ impl Curve {
         }
         // `left` is the entry at or below the length; both neighbours exist by the tests above.
         let left = self.lengths.partition_point(|&entry| entry <= length) - 1;
-        let step = (self.lengths[left + 1] / self.lengths[left]).ln();
+        let step = ln(self.lengths[left + 1] / self.lengths[left]);
         let rise = self.values[left + 1] - self.values[left];
-        let t = (length / self.lengths[left]).ln() / step;
+        let t = ln(length / self.lengths[left]) / step;
         // Hermite cubic on [0, 1]; tangents scaled to the interval.
         let (a, b) = (self.tangent(left) * step, self.tangent(left + 1) * step);
         let value = self.values[left]
@@ -47,7 +48,7 @@ impl Curve {
 
     /// Secant slope over ln L between entries `i` and `i + 1`.
     fn secant(&self, i: usize) -> f64 {
-        (self.values[i + 1] - self.values[i]) / (self.lengths[i + 1] / self.lengths[i]).ln()
+        (self.values[i + 1] - self.values[i]) / ln(self.lengths[i + 1] / self.lengths[i])
     }
 
     /// Slope over ln L at entry `i`: the parabola through three entries, limited to three times
@@ -66,8 +67,8 @@ impl Curve {
             return 0.0;
         }
         let (before, after) = (
-            (self.lengths[i] / self.lengths[i - 1]).ln(),
-            (self.lengths[i + 1] / self.lengths[i]).ln(),
+            ln(self.lengths[i] / self.lengths[i - 1]),
+            ln(self.lengths[i + 1] / self.lengths[i]),
         );
         let parabola = (after * left + before * right) / (before + after);
         parabola.signum() * parabola.abs().min(3.0 * left.abs().min(right.abs()))

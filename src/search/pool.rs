@@ -7,6 +7,7 @@ use crate::network::Job;
 use crate::network::corners::climates;
 use crate::network::probes::{Pool, Probes};
 use crate::network::work::Work;
+use crate::numeric::scalar::{exp, ln};
 use crate::spec::{Effort, Rail};
 use rayon::prelude::*;
 use std::collections::BTreeMap;
@@ -18,8 +19,8 @@ const CHUNK: usize = 64;
 /// The grid of one cell.
 fn grid(tech: &Tech, cell: usize, effort: Effort, headroom: f64) -> Vec<Shape> {
     let (lengths, inversions, cascodes, drops) = match effort {
-        Effort::Quick => (9, 8, 2, 1),
-        Effort::Normal => (12, 10, 2, 2),
+        Effort::Quick => (10, 8, 3, 2),
+        Effort::Normal => (14, 11, 3, 3),
         Effort::Thorough => (20, 16, 3, 3),
     };
     let mosfet = tech.mosfet();
@@ -75,8 +76,8 @@ fn steps(least: f64, most: f64, n: usize) -> Vec<f64> {
     if n < 2 || most <= least {
         return vec![least];
     }
-    let ratio = (most / least).ln() / (n - 1) as f64;
-    (0..n).map(|i| least * (ratio * i as f64).exp()).collect()
+    let ratio = ln(most / least) / (n - 1) as f64;
+    (0..n).map(|i| least * exp(ratio * i as f64)).collect()
 }
 
 /// Closed-form screening: false where no output of the rail and no feeder could use the shape.
