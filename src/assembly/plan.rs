@@ -212,7 +212,9 @@ impl<'a> Ledger<'a> {
                     // Measured below the supply; the worst corner of each end.
                     Rail::Source => [supply.most.0 - range.most.0, supply.least.0 - range.least.0],
                 };
-                (pin, copies as usize)
+                // A millivolt inside, for what snapping moves.
+                let inside = 1e-3_f64.min(0.1 * (pin[1] - pin[0]));
+                ([pin[0] + inside, pin[1] - inside], copies as usize)
             }
             // A resistor works at any pin voltage below the supply; it needs something across it.
             Reference::Resistor { .. } => ([0.0, 0.9 * supply.least.0], 1),

