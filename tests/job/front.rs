@@ -15,7 +15,8 @@ fn close(ours: f64, truth: f64, absolute: f64) {
 /// areas of rectangles.
 #[test]
 fn hypervolumes_of_small_sets() {
-    let cases: [(&[&[f64]], &[f64], f64); 5] = [
+    type Case = (&'static [&'static [f64]], &'static [f64], f64);
+    let cases: [Case; 5] = [
         (&[&[1.0, 2.0], &[2.0, 1.0]], &[3.0, 3.0], 3.0),
         (&[&[2.0, 8.0], &[6.0, 3.0]], &[10.0, 10.0], 36.0),
         (&[&[0.0, 2.0], &[2.0, 0.0]], &[3.0, 3.0], 5.0),

@@ -7,7 +7,6 @@ mod determinism;
 mod front;
 mod outside;
 mod paper;
-mod probe;
 mod remeasure;
 mod robustness;
 mod screening;

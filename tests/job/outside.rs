@@ -160,7 +160,6 @@ fn least_area_of_a_charge_law_mirror() {
     }
     let outcome = task.explore();
     let area = least_area(&outcome);
-    println!("scan {truth:e} at {inversion} {length:e}, found {area:e}");
     close(area, truth, 0.02);
     assert!(area >= truth * (1.0 - 1e-3), "{area:e} below {truth:e}");
 }

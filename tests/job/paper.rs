@@ -171,6 +171,9 @@ fn paper_agrees_with_the_whole_circuit() {
         let job = task.job();
         let all = Candidate::all(&job, &wants(&job, 1.0), &pool);
         let ledger = Ledger::new(job, &pool, &all, 1.0, f64::INFINITY);
+        let unasked = Candidate::all(&job, &wants(&job, 1e6), &pool);
+        let loose = Ledger::new(job, &pool, &unasked, 1e6, f64::INFINITY);
+        let mut loose_clerk = Clerk::new(&loose);
         let mut clerk = Clerk::new(&ledger);
         let mut tally = Tally::new();
         let mut bench = Bench::new(job, verified(&job));
@@ -191,18 +194,10 @@ fn paper_agrees_with_the_whole_circuit() {
                 .iter()
                 .map(|e| e[0].max(e[1]))
                 .collect();
-            let lost = plan
-                .legs
-                .iter()
-                .enumerate()
-                .filter(|&(k, &f)| ledger.candidate(&plan.members[f]).outputs[k].is_none())
-                .count();
             // Every limit but those of the outputs is kept: bias legs fed well, units drawable, the
             // pin in its range.
-            let errors: f64 = shares.iter().map(|s| (s - 1.0).max(0.0)).sum();
-            if price.excess - errors - lost as f64 > 1e-6
-                || shares.iter().all(|&s| s > 3.0 || s == 0.0)
-            {
+            let kept = loose_clerk.price(&plan, &mut Tally::new()).excess == 0.0;
+            if !kept || shares.iter().all(|&s| s > 3.0 || s == 0.0) {
                 continue;
             }
             // The mismatch of a degeneration resistor is read at the unit current of the sweep, so
@@ -246,7 +241,6 @@ fn paper_agrees_with_the_whole_circuit() {
             }
         }
     }
-    println!("{compared} errors, {near} of the limit, {rosy} rosier, {gloomy} gloomy");
     assert!(compared > 150, "{compared}");
     assert!(near < 0.05, "{near}");
     assert!(rosy < 0.02, "{rosy}");

@@ -1,4 +1,5 @@
 //! A million circuits within the cards' limits: how many have no solution found for them.
+#![allow(clippy::print_stdout, reason = "the figures of a run are its purpose")]
 
 use crate::physics::mirrors::random_mirror;
 use biasloom::cells::solved::{Climate, Failure, Solver};
