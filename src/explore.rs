@@ -451,7 +451,7 @@ impl Thoroughness {
             },
             Effort::Normal => Thoroughness {
                 ladder: 12,
-                tops: 6,
+                tops: 4,
                 rounds: 2,
                 generations: 3,
                 levels: 6,
