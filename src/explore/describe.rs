@@ -406,7 +406,9 @@ fn deck(job: &Job, network: &Network) -> DeckSource {
         }
     }
     let current = job.spec.reference.current().0;
+    let origins = drawing.draw.mos_origin.iter();
     DeckSource {
+        families: origins.map(|o| drawing.names[o.family].clone()).collect(),
         supply: drawing.draw.supply,
         references,
         outputs: drawing.pins,

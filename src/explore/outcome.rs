@@ -225,6 +225,8 @@ pub struct OutputCurve {
 pub struct DeckSource {
     /// Elements of the network without any source.
     pub netlist: Netlist,
+    /// Family of each transistor, in the netlist's order.
+    pub families: Vec<String>,
     /// Supply node.
     pub supply: Node,
     /// Reference pins (empty with a resistor reference), one per copy used.

@@ -362,9 +362,13 @@ struct Sizes<'a> {
 
 impl<'a> Sizes<'a> {
     fn new(shown: &view::Shown<'a>) -> Sizes<'a> {
-        let devices = shown.network.devices.iter();
-        let families = devices
-            .map(|row| (row.name.as_str(), row.family.as_str()))
+        let deck = &shown.network.deck;
+        let families = deck
+            .netlist
+            .mos
+            .iter()
+            .zip(&deck.families)
+            .map(|(mos, family)| (mos.name.as_str(), family.as_str()))
             .collect();
         let mut sizes = Sizes {
             parameters: Vec::new(),

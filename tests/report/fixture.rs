@@ -524,6 +524,16 @@ fn network(
             Some(&stiff.name),
         ),
     ];
+    let family_of = |name: &str| {
+        let row = maker.rows.iter().find(|r| r.name == name);
+        row.map_or_else(String::new, |r| r.family.clone())
+    };
+    let mos_families = maker
+        .netlist
+        .mos
+        .iter()
+        .map(|m| family_of(&m.name))
+        .collect();
     NetworkReport {
         rank,
         figures,
@@ -533,6 +543,7 @@ fn network(
         reference_pin: [0.512, 0.744],
         deck: DeckSource {
             netlist: maker.netlist,
+            families: mos_families,
             supply: 1,
             references: vec![inputs[0]],
             outputs: pins,
