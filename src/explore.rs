@@ -151,10 +151,12 @@ fn networks(
         .collect();
     let mut best: Vec<Scored> = found.clone();
     for generation in 0..effort.generations {
+        // The first shapes come from a coarse grid, later ones were refined before.
+        let radius = if generation == 0 { 0.25 } else { 0.1 };
         let refined: Vec<Option<Refined>> = budgets
             .par_iter()
             .zip(&found)
-            .map(|(&budget, scored)| shop.refine(budget, &scored.plan, 0.25))
+            .map(|(&budget, scored)| shop.refine(budget, &scored.plan, radius))
             .collect();
         for (i, refined) in refined.into_iter().enumerate() {
             let Some(refined) = refined else { continue };
@@ -171,7 +173,11 @@ fn networks(
         if generation + 1 == effort.generations || stop.load(Ordering::Relaxed) {
             break;
         }
-        spread(&mut budgets, &mut best);
+        spread(
+            &mut budgets,
+            &mut best,
+            job.spec.limits.area.map_or(f64::INFINITY, |l| l.0),
+        );
         let next: Vec<(Scored, Option<bool>)> = budgets
             .par_iter()
             .enumerate()
@@ -241,9 +247,11 @@ fn networks(
 
 /// Moves rungs that found nothing of their own into the widest gaps of the front: an epsilon
 /// sweep whose steps follow the front. Budgets stay in falling order, each with its best so far.
-fn spread(budgets: &mut Vec<f64>, best: &mut Vec<Scored>) {
+fn spread(budgets: &mut Vec<f64>, best: &mut Vec<Scored>, area: f64) {
     /// An excess that the final polish settles.
     const NEARLY: f64 = 2e-3;
+    /// A network this much over the area limit may yet come under it.
+    const SHRINKS: f64 = 1.15;
     /// Rungs closer than this (ratio) would find the same network again.
     const CLOSE: f64 = 1.03;
     let points: Vec<Vec<f64>> = best
@@ -252,7 +260,7 @@ fn spread(budgets: &mut Vec<f64>, best: &mut Vec<Scored>) {
         .collect();
     let kept: Vec<usize> = front::nondominated(&points)
         .into_iter()
-        .filter(|&i| best[i].price.excess < NEARLY)
+        .filter(|&i| best[i].price.excess < NEARLY && best[i].price.area < SHRINKS * area)
         .collect();
     if kept.is_empty() {
         return;
@@ -264,12 +272,8 @@ fn spread(budgets: &mut Vec<f64>, best: &mut Vec<Scored>) {
         .map(|&i| (best[i].price.overhead, best[i].clone()))
         .collect();
     rungs.sort_by(|a, b| b.0.total_cmp(&a.0));
-    // Below the last: where the ladder ended without a network, somewhere between.
-    let floor = budgets
-        .last()
-        .copied()
-        .unwrap_or(0.0)
-        .min(rungs[rungs.len() - 1].0 * 0.9);
+    // Below the last rung a network may or may not exist: one small step at a time.
+    let floor = rungs[rungs.len() - 1].0 * 0.9;
     for _ in 0..idle {
         let ratio = |i: usize| rungs[i].0 / rungs.get(i + 1).map_or(floor, |r| r.0);
         let widest = (0..rungs.len()).fold(0, |w, i| if ratio(i) > ratio(w) { i } else { w });
@@ -451,7 +455,7 @@ impl Thoroughness {
             },
             Effort::Normal => Thoroughness {
                 ladder: 12,
-                tops: 6,
+                tops: 4,
                 rounds: 2,
                 generations: 3,
                 levels: 6,

@@ -250,13 +250,7 @@ pub fn polish<'a>(
             inside -= 1.0 - INSIDE;
         }
         if round > 0 || effort.iterations > 0 {
-            let radius = if round == 0 {
-                0.25
-            } else if round < effort.rounds {
-                0.08
-            } else {
-                0.03
-            };
+            let radius = if round < effort.rounds { 0.06 } else { 0.03 };
             slp::descend(&mut desk.borrow_mut(), radius);
             // The swarm and the simplex finish what straight lines leave: kinks where the worst
             // corner changes.

@@ -178,13 +178,10 @@ pub fn sweep_at(
                     work.solved += 1;
                     shapes[*rail].push(s);
                 }
-                Err(failure) => {
-                    let reason = match failure {
-                        Failure::NoSize => "no size",
-                        Failure::NotConverged => "no DC solution",
-                    };
-                    let key = format!("{} {reason}", CELLS[*cell].name());
-                    *failures.entry(key).or_default() += 1;
+                // The closed forms found no size: excluded before any solution.
+                Err(Failure::NoSize) => work.screened_out += 1,
+                Err(Failure::NotConverged) => {
+                    *failures.entry(CELLS[*cell].name().to_owned()).or_default() += 1;
                 }
             }
         }
