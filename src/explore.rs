@@ -292,7 +292,9 @@ fn spread(budgets: &mut Vec<f64>, best: &mut Vec<Scored>, area: f64) {
 fn count(work: &mut Work, proved: Option<bool>) {
     match proved {
         Some(true) => work.milps_proved += 1,
-        _ => work.milps_stopped += 1,
+        Some(false) => work.milps_stopped += 1,
+        // Its instances make no network: nothing was optimised.
+        None => {}
     }
 }
 

@@ -22,9 +22,9 @@ use good_lp::{Expression, ProblemVariables, SolverModel, Variable, constraint, m
 const GAP: f64 = 1e-3;
 /// A line may bring this much more variance than the instance was made for: sizes are refined
 /// afterwards.
-const VARIANCE_SLACK: f64 = 1.2;
+pub const VARIANCE_SLACK: f64 = 1.2;
 /// Likewise an output's error over its limit.
-const SHARE_SLACK: f64 = 1.05;
+pub const SHARE_SLACK: f64 = 1.05;
 
 /// A family that may be built.
 #[derive(Debug, Clone)]
