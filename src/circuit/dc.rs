@@ -424,9 +424,7 @@ impl MosLanes {
     #[inline(always)]
     fn stamp(&self, p: &Point, mut add: impl FnMut(usize, Lanes)) {
         // Columns in the order drain, gate, source, bulk.
-        let channel = [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm];
-        let [bg, bd, bs] = p.ib_slopes;
-        let impact = [bd, bg, bs, -(bd + bg + bs)];
+        let (channel, impact) = p.slopes();
         for j in 0..4 {
             if self.slots[j] != NONE {
                 add(self.slots[j] as usize, channel[j] + impact[j]);

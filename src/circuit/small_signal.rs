@@ -4,7 +4,6 @@
 
 use super::dc::{Circuit, State};
 use super::netlist::Node;
-use crate::device::Point;
 use crate::numeric::dispatch::{Work, widest};
 use crate::numeric::lanes::{Lanes, Mask};
 
@@ -81,9 +80,7 @@ impl Circuit {
     /// Visits d(current from `node`)/d(voltage of another node), element by element.
     fn slopes_of(&self, state: &State, node: Node, mut visit: impl FnMut(Node, Lanes)) {
         for (m, p) in self.mos.iter().zip(&state.points) {
-            let channel = [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm];
-            let [bg, bd, bs] = p.ib_slopes;
-            let impact = [bd, bg, bs, -(bd + bg + bs)];
+            let (channel, impact) = p.slopes();
             for ((&other, channel), impact) in m.nodes.iter().zip(channel).zip(impact) {
                 if m.nodes[0] == node {
                     visit(other, channel + impact);
@@ -143,9 +140,7 @@ impl Circuit {
             if !m.nodes.contains(&driven) {
                 continue;
             }
-            let channel = [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm];
-            let [bg, bd, bs] = p.ib_slopes;
-            let impact = [bd, bg, bs, -(bd + bg + bs)];
+            let (channel, impact) = p.slopes();
             for j in 0..4 {
                 if m.nodes[j] != driven {
                     continue;
@@ -302,7 +297,7 @@ impl Work for Studying<'_> {
             if d != pin && s != pin && b != pin {
                 continue;
             }
-            let (channel, impact) = slopes(p);
+            let (channel, impact) = p.slopes();
             let on = |node: Node| if node == pin { 1.0 } else { 0.0 };
             let (through, into_bulk) = (on(d) - on(s), on(d) - on(b));
             *current += (p.id * through + p.ib * into_bulk) * m.sign;
@@ -347,7 +342,7 @@ impl Work for Studying<'_> {
                 .gain
                 .push((p.id * through + p.ib * into_bulk) * m.sign);
             if m.nodes.contains(&pin) {
-                let (channel, impact) = slopes(p);
+                let (channel, impact) = p.slopes();
                 for j in 0..4 {
                     if m.nodes[j] == pin {
                         *conductance += channel[j] * through + impact[j] * into_bulk;
@@ -365,16 +360,6 @@ impl Work for Studying<'_> {
             *conductance += r.conductance * through * (on(a) - on(b));
         }
     }
-}
-
-/// Slopes of a device's channel and impact currents over drain, gate, source and bulk.
-#[inline(always)]
-fn slopes(p: &Point) -> ([Lanes; 4], [Lanes; 4]) {
-    let [bg, bd, bs] = p.ib_slopes;
-    (
-        [p.gds, p.gm, -p.gms, p.gms - p.gds - p.gm],
-        [bd, bg, bs, -(bd + bg + bs)],
-    )
 }
 
 struct Factorise<'a> {

@@ -45,6 +45,17 @@ impl Point {
         ib_slopes: [Lanes::ZERO; 3],
         vdssat: Lanes::ZERO,
     };
+
+    /// Slopes of the channel current and of the impact-ionisation current over drain, gate, source
+    /// and bulk. Currents follow voltage differences alone, so each row sums to zero.
+    #[inline(always)]
+    pub fn slopes(&self) -> ([Lanes; 4], [Lanes; 4]) {
+        let [bg, bd, bs] = self.ib_slopes;
+        (
+            [self.gds, self.gm, -self.gms, self.gms - self.gds - self.gm],
+            [bd, bg, bs, -(bd + bg + bs)],
+        )
+    }
 }
 
 /// A transistor law at fixed geometry, one parameter set per lane.
