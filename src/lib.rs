@@ -54,6 +54,7 @@ pub mod front;
 pub mod network;
 pub mod numeric;
 pub mod process;
+pub mod proof;
 pub mod report;
 pub mod search;
 pub mod spec;

@@ -11,17 +11,40 @@
 
 use super::candidates::{Candidate, End, Want};
 use super::plan::{Ledger, units_for};
+use crate::network::Job;
 use crate::numeric::scalar::powf;
 use crate::spec::Rail;
 use rayon::prelude::*;
 use std::collections::BTreeMap;
 
 /// Input units tried for a family.
-const UNITS: [u32; 12] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16, 20, 40];
+pub const UNITS: [u32; 12] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16, 20, 40];
 /// Largest number of units in one leg.
 const UNITS_MOST: f64 = 400.0;
 /// Candidates handed to one task.
 const CHUNK: usize = 128;
+
+/// Input currents of families that suit a job within a budget of overhead current, A, rising.
+pub fn currents(job: &Job, wants: &[Want], budget: f64) -> Vec<f64> {
+    let reference = job.spec.reference.current().0;
+    let mut currents: Vec<f64> = [
+        0.01, 0.02, 0.05, 0.1, 0.2, 0.3, 0.4, 0.5, 0.8, 1.0, 1.5, 2.0, 4.0,
+    ]
+    .iter()
+    .map(|r| r * reference)
+    .collect();
+    // A feed of an output's own current costs no rounding.
+    let smallest = wants
+        .iter()
+        .map(|w| w.current)
+        .fold(f64::INFINITY, f64::min);
+    currents.retain(|&c| c <= budget && (c >= smallest * 0.99 || c >= reference * 0.2));
+    if !currents.contains(&reference) {
+        currents.push(reference);
+    }
+    currents.sort_by(f64::total_cmp);
+    currents
+}
 
 /// Kinds of feed.
 #[derive(Debug, Clone)]
@@ -54,24 +77,7 @@ pub struct Feed {
 impl Feeds {
     /// Kinds of feed that suit a ledger's outputs.
     pub fn of(ledger: &Ledger, resolution: usize) -> Feeds {
-        let reference = ledger.job.spec.reference.current().0;
-        let mut currents: Vec<f64> = [
-            0.01, 0.02, 0.05, 0.1, 0.2, 0.3, 0.4, 0.5, 0.8, 1.0, 1.5, 2.0, 4.0,
-        ]
-        .iter()
-        .map(|r| r * reference)
-        .collect();
-        // A feed of an output's own current costs no rounding.
-        let smallest = ledger
-            .wants
-            .iter()
-            .map(|w| w.current)
-            .fold(f64::INFINITY, f64::min);
-        currents.retain(|&c| c <= ledger.budget && (c >= smallest * 0.99 || c >= reference * 0.2));
-        if !currents.contains(&reference) {
-            currents.push(reference);
-        }
-        currents.sort_by(f64::total_cmp);
+        let currents = currents(&ledger.job, &ledger.wants, ledger.budget);
         // The square of limit over sigma is all the variance an output can bear.
         let bearable: Vec<f64> = ledger
             .wants

@@ -95,6 +95,13 @@ const START: Line = Line {
     error: [[Lanes::ZERO; GROUPS]; 2],
 };
 
+impl Line {
+    /// Variance collected at a climate.
+    pub fn variance_at(&self, climate: usize) -> f64 {
+        self.variance[climate / 8].0[climate % 8]
+    }
+}
+
 impl Default for Line {
     fn default() -> Self {
         START

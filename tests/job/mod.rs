@@ -8,6 +8,7 @@ mod determinism;
 mod front;
 mod outside;
 mod paper;
+mod proof;
 mod remeasure;
 mod robustness;
 mod screening;

@@ -1,0 +1,171 @@
+//! How far a network is from the smallest possible: a lower bound on the area of every network of
+//! the declared design space that meets the spec within the same overhead current.
+//!
+//! Floors of what area can buy ([`merit`]), a relaxed network that every real one maps onto
+//! ([`relaxed`]), the best prices for its rows ([`ascent`]), and the mapping itself ([`image`]).
+//! A certificate is the prices alone: whoever has the spec can check the bound with one pass over
+//! the relaxed networks.
+
+pub mod ascent;
+pub mod image;
+pub mod merit;
+pub mod relaxed;
+
+use crate::assembly::candidates::wants;
+use crate::assembly::columns::{UNITS, currents};
+use crate::cells::CELLS;
+use crate::network::Job;
+use crate::network::probes::Pool;
+use crate::numeric::scalar::powf;
+use crate::spec::Effort;
+use relaxed::{Prices, Relaxed, Resolution};
+use serde::Serialize;
+
+/// What a nominal overhead current may differ from that of the worst corner, fraction.
+const CORNERS: f64 = 0.01;
+
+/// A proven lower bound and what proves it.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct Certificate {
+    /// No network of the declared design space that meets the spec within [`Certificate::overhead`]
+    /// is smaller, m^2.
+    pub area: f64,
+    /// Overhead current that may be used, A.
+    pub overhead: f64,
+    /// Dual price of serving each output, m^2, in the order of the spec.
+    pub output_prices: Vec<f64>,
+    /// Dual price of overhead current, m^2/A.
+    pub overhead_price: f64,
+}
+
+/// What the bound covers, and what it does not.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct Declared {
+    /// Cells a network may be made of.
+    pub cells: Vec<String>,
+    /// Lengths, m, least and most, per rail (sink, source).
+    pub lengths: [[f64; 2]; 2],
+    /// Inversion coefficients, least and most.
+    pub inversions: [f64; 2],
+    /// Input currents of families, A.
+    pub currents: Vec<f64>,
+    /// Units in an input leg.
+    pub units: Vec<u32>,
+    /// Families in a chain from the reference at most.
+    pub depth: usize,
+    /// Largest systematic error of a gate line and of a feeder leg, fraction.
+    pub line_error: f64,
+    /// How much an error on paper may differ from the whole circuit's, as a share of its limit.
+    pub paper: f64,
+}
+
+/// The proof of a spec: its relaxed problem, ready to price.
+pub struct Prover {
+    relaxed: Relaxed,
+    steps: usize,
+    /// What is covered.
+    pub declared: Declared,
+    /// DC solutions spent on the floors.
+    pub solutions: u64,
+}
+
+impl Prover {
+    /// Finds the floors and sets up the relaxed problem; `None` where some output is served by no
+    /// shape of the pool.
+    pub fn new(job: &Job, pool: &Pool) -> Option<Prover> {
+        let wants = wants(job, 1.0);
+        let (per_decade, levels, steps) = match job.spec.search.effort {
+            Effort::Quick => (12.0, 2, 25),
+            Effort::Normal => (20.0, 4, 60),
+            Effort::Thorough => (60.0, 16, 300),
+        };
+        let currents = currents(job, &wants, job.spec.overhead_limit());
+        let (merits, _) = merit::merits(job, pool, &wants);
+        let relaxed = Relaxed::new(
+            job,
+            &wants,
+            &merits,
+            &currents,
+            &UNITS,
+            Resolution {
+                density: powf(10.0, 1.0 / per_decade),
+                levels,
+            },
+        )?;
+        let allowed = CELLS
+            .iter()
+            .enumerate()
+            .filter(|(index, _)| pool.shapes.iter().flatten().any(|s| s.shape.cell == *index));
+        Some(Prover {
+            relaxed,
+            steps,
+            declared: Declared {
+                cells: allowed.map(|(_, c)| c.name().to_owned()).collect(),
+                lengths: [&job.card.nmos, &job.card.pmos]
+                    .map(|m| [m.length.least.0, m.length.most.0]),
+                inversions: merit::INVERSION,
+                currents,
+                units: UNITS.to_vec(),
+                depth: relaxed::DEPTH,
+                line_error: merit::LINE,
+                paper: relaxed::PAPER,
+            },
+            solutions: merits.evaluations,
+        })
+    }
+
+    /// Certificates for networks with these overhead currents (A, at the worst corner) and areas
+    /// (m^2): the best prices found for each, shared among them.
+    pub fn prove(&self, networks: &[(f64, f64)]) -> Vec<Certificate> {
+        let mut planes = Vec::new();
+        let mut found: Vec<Prices> = Vec::new();
+        let mut start = Prices {
+            outputs: self.relaxed.guess(),
+            overhead: 0.0,
+        };
+        if let Some((overhead, area)) = networks.first() {
+            start.overhead = 0.2 * area / overhead;
+        }
+        for (i, (overhead, _)) in networks.iter().enumerate() {
+            // The first climbs from afar, the others start where it ended.
+            let (steps, radius) = if i == 0 {
+                (self.steps, 0.3)
+            } else {
+                (self.steps / 6, 0.1)
+            };
+            let (prices, _) = ascent::ascend(
+                &self.relaxed,
+                overhead * (1.0 + CORNERS),
+                &start,
+                &mut planes,
+                steps,
+                radius,
+            );
+            start = prices.clone();
+            found.push(prices);
+        }
+        networks
+            .iter()
+            .map(|&(overhead, _)| {
+                let certificates = found.iter().map(|p| self.certificate(p, overhead));
+                certificates
+                    .reduce(|a, b| if b.area > a.area { b } else { a })
+                    .expect("there are prices for every network")
+            })
+            .collect()
+    }
+
+    /// What prices prove at an overhead current, A.
+    pub fn certificate(&self, prices: &Prices, overhead: f64) -> Certificate {
+        let area = self
+            .relaxed
+            .certify(prices, overhead * (1.0 + CORNERS))
+            .max(0.0);
+        Certificate {
+            area,
+            overhead,
+            output_prices: prices.outputs.clone(),
+            overhead_price: prices.overhead,
+        }
+    }
+}

@@ -1,0 +1,284 @@
+//! Lower bounds on area: that they hold, for shapes, for families, for networks, for closed forms.
+
+use super::Task;
+use biasloom::assembly::candidates::wants;
+use biasloom::assembly::columns::{UNITS, currents};
+use biasloom::assembly::plan::Plan;
+use biasloom::assembly::workshop::Workshop;
+use biasloom::cells::solved::Solver;
+use biasloom::cells::{CELLS, Shape};
+use biasloom::network::corners::climates;
+use biasloom::network::probes::{Pool, Probes};
+use biasloom::network::work::Work;
+use biasloom::proof::merit::{Gauge, INVERSION, MARGIN, calibrate, merits};
+use biasloom::proof::relaxed::{Prices, Relaxed, Resolution};
+use biasloom::proof::{Prover, image};
+use biasloom::search::pool::sweep;
+use biasloom::spec::{Effort, Rail};
+use rand::{Rng, SeedableRng};
+use rand_pcg::Pcg64;
+use rayon::prelude::*;
+use std::sync::atomic::AtomicBool;
+
+fn pool_of(task: &Task) -> Pool {
+    let stop = AtomicBool::new(false);
+    sweep(&task.job(), &mut Work::default(), &|_, _| {}, &stop)
+}
+
+/// Random shapes of the whole declared design space, solved in full at every climate: none may do
+/// better than the floors say. Half of them stand near the best of the pool, where a floor that is
+/// too high would show.
+fn floors_hold(name: &str, shapes: usize) {
+    let task = Task::shipped(name, Effort::Quick);
+    let job = task.job();
+    let pool = pool_of(&task);
+    let wants = wants(&job, 1.0);
+    let (tracked, ratios) = calibrate(&job, &pool);
+    let (floors, _) = merits(&job, &pool, &wants);
+    let chunks = 8;
+    let served: u64 = (0..2 * CELLS.len() * chunks)
+        .into_par_iter()
+        .map(|task| {
+            let (rail, cell) = ([Rail::Sink, Rail::Source][task % 2], task / 2 % CELLS.len());
+            let gauge = Gauge::new(job, rail, &pool, &wants, tracked, &ratios);
+            let tech = job.tech(rail);
+            let probes = Probes::of(&job, rail);
+            let current = job.spec.reference.current().0;
+            let mut solver = Solver::new(tech, cell, current, &probes.volts, &climates(&job));
+            let mut rng = Pcg64::seed_from_u64(task as u64);
+            let parts = CELLS[cell].parts();
+            let near: Vec<Shape> = (0..wants.len())
+                .filter_map(|k| {
+                    pool.shapes[rail as usize]
+                        .iter()
+                        .filter(|s| s.shape.cell == cell)
+                        .filter_map(|s| Some((gauge.marks(s, k)?[0], s.shape)))
+                        .min_by(|a, b| a.0.total_cmp(&b.0))
+                        .map(|m| m.1)
+                })
+                .collect();
+            let length = tech.mosfet().length;
+            let mut served = 0;
+            for n in 0..shapes / (2 * chunks) {
+                let mut shape = Shape {
+                    cell,
+                    length: rng
+                        .random_range(length.least.0.ln()..length.most.0.ln())
+                        .exp(),
+                    inversion: rng.random_range(INVERSION[0].ln()..INVERSION[1].ln()).exp(),
+                    cascode_length: 0.0,
+                    cascode_inversion: 0.0,
+                    drop: 0.0,
+                };
+                if parts.cascode {
+                    shape.cascode_length = rng
+                        .random_range(length.least.0.ln()..length.most.0.ln())
+                        .exp();
+                    shape.cascode_inversion =
+                        rng.random_range(INVERSION[0].ln()..INVERSION[1].ln()).exp();
+                }
+                if parts.drop {
+                    let least = if parts.cascode { MARGIN[0] } else { 0.01 };
+                    shape.drop = rng.random_range(least..MARGIN[1]);
+                }
+                if n % 2 == 0 && !near.is_empty() {
+                    let like = near[n / 2 % near.len()];
+                    let mut about = |x: f64| x * rng.random_range(-0.7f64..0.7).exp();
+                    shape.length = about(like.length).clamp(length.least.0, length.most.0);
+                    shape.inversion = about(like.inversion);
+                    if parts.cascode {
+                        shape.cascode_length =
+                            about(like.cascode_length).clamp(length.least.0, length.most.0);
+                        shape.cascode_inversion = about(like.cascode_inversion);
+                    }
+                    if parts.drop {
+                        let least = if parts.cascode { MARGIN[0] } else { 0.01 };
+                        shape.drop = (like.drop + rng.random_range(-0.05..0.05)).max(least);
+                    }
+                }
+                let Ok(solved) = solver.solve(&shape) else {
+                    continue;
+                };
+                for (k, floor) in floors.outputs.iter().enumerate() {
+                    let Some(marks) = gauge.marks(&solved, k) else {
+                        continue;
+                    };
+                    let Some(floor) = floor else {
+                        panic!("{shape:?} serves output {k}, the pool has none")
+                    };
+                    served += 1;
+                    let least = [floor.own, floor.line, floor.density];
+                    for (mark, least) in marks.iter().zip(least) {
+                        assert!(
+                            *mark >= least,
+                            "{shape:?} output {k}: {marks:?} below {floor:?}"
+                        );
+                    }
+                }
+                if let (Some(marks), Some(floor)) =
+                    (gauge.bare(&solved), floors.bare[rail as usize])
+                {
+                    assert!(
+                        marks[1] >= floor.line && marks[2] >= floor.density,
+                        "{shape:?}: {marks:?} below {floor:?}"
+                    );
+                }
+            }
+            served
+        })
+        .sum();
+    assert!(
+        served > (shapes / 4) as u64,
+        "hardly a shape serves anything: {served}"
+    );
+}
+
+#[test]
+fn no_shape_does_better_than_its_floor() {
+    floors_hold("starter", 4_000);
+}
+
+#[test]
+#[ignore = "a million shapes per cell take an hour"]
+fn no_shape_of_a_million_does_better_than_its_floor() {
+    floors_hold("starter", 1_000_000);
+    floors_hold("tern", 1_000_000);
+}
+
+/// Real networks, searched and refined, family by family: the relaxed family each maps onto exists
+/// and costs no more, so no relaxed optimum can exceed a real one.
+#[test]
+fn every_network_maps_onto_a_relaxed_one_that_costs_no_more() {
+    for (name, budgets) in [
+        ("starter", vec![15e-6, 30e-6]),
+        ("low-voltage", vec![30e-6, 60e-6]),
+    ] {
+        let task = Task::shipped(name, Effort::Quick);
+        let job = task.job();
+        let pool = pool_of(&task);
+        let wants = wants(&job, 1.0);
+        let stop = AtomicBool::new(false);
+        let mut shop = Workshop::open(job, &pool, 1.0, 1e-4, 5, &stop);
+        let (tracked, ratios) = calibrate(&job, &pool);
+        let gauges =
+            [Rail::Sink, Rail::Source].map(|r| Gauge::new(job, r, &pool, &wants, tracked, &ratios));
+        let (floors, _) = merits(&job, &pool, &wants);
+        let relaxed = Relaxed::new(
+            &job,
+            &wants,
+            &floors,
+            &currents(&job, &wants, 1e-4),
+            &UNITS,
+            Resolution {
+                density: 1.05,
+                levels: 16,
+            },
+        )
+        .expect("all outputs can be served");
+        for budget in budgets {
+            let found = shop.search(budget, &[], true, 1, 3);
+            let mut plans: Vec<Plan> = vec![found.plan.clone()];
+            if let Some(refined) = shop.refine(budget, &found.plan, 0.2) {
+                plans.push(shop.shelve(refined, &mut Work::default()));
+            }
+            for plan in plans {
+                let price = shop.score(budget, &plan).price;
+                let ledger = shop.ledger(budget);
+                let families = image::families(&ledger, &plan, &gauges, tracked);
+                let columns = image::columns(&relaxed, &plan, &families);
+                if price.excess > 0.0 {
+                    continue;
+                }
+                let area: f64 = columns
+                    .iter()
+                    .map(|c| {
+                        c.as_ref()
+                            .unwrap_or_else(|| panic!("{name}: {families:?}"))
+                            .area
+                    })
+                    .sum();
+                assert!(
+                    area <= price.area,
+                    "{name}: relaxed {area:e} above {:e}",
+                    price.area
+                );
+                assert!(
+                    area >= 0.5 * price.area,
+                    "{name}: relaxed {area:e} of {:e} says little",
+                    price.area
+                );
+            }
+        }
+    }
+}
+
+/// Any prices whatever prove a bound; none may exceed what a network reaches. And the best prices
+/// found prove what they claim when they are scanned again.
+#[test]
+fn any_prices_prove_a_bound_below_every_network() {
+    let task = Task::shipped("starter", Effort::Quick);
+    let outcome = task.explore();
+    let job = task.job();
+    let prover = Prover::new(&job, &pool_of(&task)).expect("it can be served");
+    let figure = |name: &str, n: usize| {
+        outcome.front[n]
+            .figures
+            .iter()
+            .find(|f| f.name == name)
+            .map(|f| f.value)
+            .unwrap()
+    };
+    let networks: Vec<(f64, f64)> = (0..outcome.front.len())
+        .map(|n| (figure("overhead_current", n), figure("area", n)))
+        .collect();
+    let certificates = prover.prove(&networks);
+    let mut rng = Pcg64::seed_from_u64(5);
+    for (certificate, &(overhead, area)) in certificates.iter().zip(&networks) {
+        assert!(certificate.area <= area, "{certificate:?} above {area:e}");
+        assert!(
+            certificate.area >= 0.3 * area,
+            "{certificate:?} of {area:e} says little"
+        );
+        let prices = Prices {
+            outputs: certificate.output_prices.clone(),
+            overhead: certificate.overhead_price,
+        };
+        assert_eq!(prover.certificate(&prices, overhead), *certificate);
+        for _ in 0..20 {
+            let prices = Prices {
+                outputs: prices
+                    .outputs
+                    .iter()
+                    .map(|u| u * rng.random_range(0.5..1.5))
+                    .collect(),
+                overhead: prices.overhead * rng.random_range(0.0..3.0),
+            };
+            assert!(prover.certificate(&prices, overhead).area <= area);
+        }
+    }
+}
+
+/// The least area of a 1:1 mirror is known in closed form (Hershenson, Boyd, Lee, IEEE TCAD 20(1),
+/// 2001, and what a hair of triode adds: 459.3 um^2 for two devices without borders). The bound is
+/// below it, and near.
+#[test]
+fn bound_of_a_square_law_mirror_is_below_its_closed_form() {
+    let text = "
+card: textbook-ideal
+supply: 3 V
+temperature: 27 degC
+corners: [TT]
+reference: { current: 10 uA, flows: into network, range: 0 V to 2.5 V }
+outputs:
+  - { name: copy, kind: sink, ratio: 1, range: 0.2 V to 2.5 V, accuracy: 1 % }
+search: { effort: normal }
+";
+    let task = Task::read("one_to_one", text);
+    let prover = Prover::new(&task.job(), &pool_of(&task)).expect("it can be served");
+    let bound = prover.prove(&[(10e-6, 459.3e-12)])[0].area * 1e12;
+    assert!(
+        bound <= 459.3,
+        "{bound} um2 is more than a mirror that exists"
+    );
+    assert!(bound >= 0.85 * 459.3, "{bound} um2 says little");
+}
