@@ -46,7 +46,7 @@ pub struct Plan {
 }
 
 /// What a plan costs and how it stands against the limits.
-#[derive(Debug, Clone, Copy, PartialEq)]
+#[derive(Debug, Clone, Copy, PartialEq, Default)]
 pub struct Price {
     /// Area, m^2.
     pub area: f64,
@@ -635,27 +635,26 @@ impl Work for Pricing<'_, '_, '_> {
                 output(ledger, plan, tally, k, leg);
             }
         }
-        let mut price = tally.sum(ledger);
         // Area and currents are quickly added up; errors are most of the work, and one of them may
         // be enough to know that the rest does not matter.
         let too_dear =
             |area, excess| ceiling.is_some_and(|c| charged(area, excess, c.charge) >= c.score);
-        if too_dear(price.area, price.excess) {
+        let quick = ceiling.map_or(Price::default(), |_| tally.sum(ledger));
+        if too_dear(quick.area, quick.excess) {
             return None;
         }
-        let (mut excess, outputs) = (price.excess, plan.legs.len());
+        let (mut excess, outputs) = (quick.excess, plan.legs.len());
         let first = if ceiling.is_some() { tally.doubtful } else { 0 };
         for k in (first.min(outputs)..outputs).chain(0..first.min(outputs)) {
             if is(&dirty, plan.legs[k]) {
                 excess += output_error(ledger, plan, tally, k, groups);
-                if too_dear(price.area, excess) {
+                if too_dear(quick.area, excess) {
                     tally.doubtful = k;
                     return None;
                 }
             }
         }
-        price = tally.sum(ledger);
-        Some(price)
+        Some(tally.sum(ledger))
     }
 }
 
@@ -663,12 +662,7 @@ impl Tally {
     /// Adds up the shares, always in the same order.
     #[inline(always)]
     fn sum(&self, ledger: &Ledger) -> Price {
-        let mut price = Price {
-            area: 0.0,
-            overhead: 0.0,
-            excess: 0.0,
-            error_share: 0.0,
-        };
+        let mut price = Price::default();
         let mut references = 0;
         for share in self.families.iter().chain(&self.outputs) {
             price.area += share.area;
