@@ -114,9 +114,11 @@ fn networks(
     let assembled = shop.assembled(limit, &suggested, effort.nodes);
     count(work, assembled.as_ref().map(|a| a.1));
     let starts: Vec<&Plan> = assembled.iter().map(|a| &a.0).collect();
-    let tops: Vec<Scored> = (0..effort.tops)
+    let tops: Vec<Scored> = (0..effort.tops as usize)
         .into_par_iter()
+        .with_max_len(ALONE)
         .map(|i| {
+            let i = i as u64;
             // One from the MILP's network, the others from scratch.
             let starts: &[&Plan] = if i == 0 { &starts } else { &[] };
             shop.search(
@@ -140,6 +142,7 @@ fn networks(
         .collect();
     let mut found: Vec<Scored> = budgets
         .par_iter()
+        .with_max_len(ALONE)
         .enumerate()
         .map(|(i, &budget)| {
             let seed = seed.wrapping_add(1 + i as u64);
@@ -155,6 +158,7 @@ fn networks(
         let radius = if generation == 0 { 0.25 } else { 0.1 };
         let refined: Vec<Option<Refined>> = budgets
             .par_iter()
+            .with_max_len(ALONE)
             .zip(&found)
             .map(|(&budget, scored)| shop.refine(budget, &scored.plan, radius))
             .collect();
@@ -180,6 +184,7 @@ fn networks(
         );
         let next: Vec<(Scored, Option<bool>)> = budgets
             .par_iter()
+            .with_max_len(ALONE)
             .enumerate()
             .map(|(i, &budget)| {
                 let near = |j: usize| j.abs_diff(i) <= 1;
@@ -216,6 +221,7 @@ fn networks(
     };
     let polished: Vec<(Option<Polished>, u64, u64)> = budgets
         .par_iter()
+        .with_max_len(ALONE)
         .zip(&best)
         .enumerate()
         .map(|(i, (&budget, scored))| {
@@ -414,6 +420,9 @@ fn tightenings(job: &Job) -> Vec<f64> {
 
 /// Networks nearer to each other than this share in every traded figure are one point of the front.
 const NEARLY_SAME: f64 = 0.005;
+
+/// Rungs handed to a thread at once: they are few and long, and of very different length.
+const ALONE: usize = 1;
 
 /// Next rung of the budget ladder.
 const LADDER_STEP: f64 = 0.87;

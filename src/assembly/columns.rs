@@ -732,6 +732,7 @@ pub fn shortlist(ledger: &Ledger, feeds: &Feeds) -> [Vec<usize>; 2] {
         let winners: Vec<Vec<usize>> = feeds
             .currents
             .par_iter()
+            .with_max_len(1)
             .map(|&current| {
                 let mut contests: BTreeMap<Contest, Vec<(f64, usize)>> = BTreeMap::new();
                 let mut enter = |key, cost: f64, index: usize| {

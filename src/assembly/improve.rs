@@ -9,7 +9,7 @@
 
 use super::candidates::{Candidate, Want};
 use super::columns::{Feeds, shortlist};
-use super::plan::{Clerk, Ledger, Member, Plan, Price, Tally};
+use super::plan::{Ceiling, Clerk, Ledger, Member, Plan, Price, Tally, charged};
 use rand::Rng;
 use rand_pcg::Pcg64Mcg;
 use std::sync::atomic::{AtomicBool, Ordering};
@@ -147,9 +147,7 @@ impl<'s, 'a> Search<'s, 'a> {
     }
 
     fn charged(&self, price: &Price) -> f64 {
-        // More than a polish settles costs something at once: feasible beats nearly feasible.
-        let step = if price.excess > 2e-3 { 0.02 } else { 0.0 };
-        price.area + self.charge * (price.excess + step)
+        charged(price.area, price.excess, self.charge)
     }
 
     /// Makes `plan` the one that changes are tried on.
@@ -256,9 +254,17 @@ impl<'s, 'a> Search<'s, 'a> {
 
     /// Keeps a plan if it is cheaper. It differs from the base plan in family `touched` alone.
     fn offer(&mut self, best: &mut Scored, plan: &Plan, touched: usize) -> bool {
-        let price = self
+        let ceiling = Ceiling {
+            charge: self.charge,
+            score: best.score,
+        };
+        let (base, scratch) = (&self.base, &mut self.scratch);
+        let Some(price) = self
             .clerk
-            .reprice(plan, &self.base, &mut self.scratch, touched);
+            .repriced(plan, base, scratch, touched, Some(ceiling))
+        else {
+            return false;
+        };
         let score = self.charged(&price);
         let better = score < best.score * (1.0 - 1e-9);
         if better {

@@ -46,7 +46,7 @@ pub struct Plan {
 }
 
 /// What a plan costs and how it stands against the limits.
-#[derive(Debug, Clone, Copy, PartialEq)]
+#[derive(Debug, Clone, Copy, PartialEq, Default)]
 pub struct Price {
     /// Area, m^2.
     pub area: f64,
@@ -56,6 +56,23 @@ pub struct Price {
     pub excess: f64,
     /// Largest error over its limit.
     pub error_share: f64,
+}
+
+/// What a plan has to stay below to be of interest.
+#[derive(Debug, Clone, Copy)]
+pub(super) struct Ceiling {
+    /// Area charged for an excess of one limit by its own size, m^2.
+    pub(super) charge: f64,
+    /// A score, as [`charged`] counts, that a plan of interest does not reach.
+    pub(super) score: f64,
+}
+
+/// What the search minimises: area with every excess charged, m^2. It never falls as either rises.
+#[inline(always)]
+pub(super) fn charged(area: f64, excess: f64, charge: f64) -> f64 {
+    // More than a polish settles costs something at once: feasible beats nearly feasible.
+    let step = if excess > 2e-3 { 0.02 } else { 0.0 };
+    area + charge * (excess + step)
 }
 
 /// Everything a plan is measured against.
@@ -128,6 +145,8 @@ pub struct Tally {
     stamp: u64,
     /// Where this tally differs from the one with the same stamp: families and outputs.
     changed: (Vec<usize>, Vec<usize>),
+    /// The output whose error made the last plan too dear: the first to look at in the next.
+    doubtful: usize,
 }
 
 /// What one family or one output adds to the price.
@@ -152,6 +171,7 @@ impl Tally {
             absolute: [[Lanes::ZERO; GROUPS]; 2],
             stamp: 0,
             changed: (Vec::new(), Vec::new()),
+            doubtful: 0,
         }
     }
 
@@ -367,12 +387,14 @@ impl<'l, 'a> Clerk<'l, 'a> {
         tally.changed.0.clear();
         tally.changed.1.clear();
         self.remember(plan, None);
-        widest(Pricing {
+        let price = widest(Pricing {
             clerk: self,
             plan,
             tally,
             touched: None,
-        })
+            ceiling: None,
+        });
+        price.expect("without a ceiling every plan has a price")
     }
 
     /// Makes a repriced tally the base of further ones.
@@ -392,6 +414,20 @@ impl<'l, 'a> Clerk<'l, 'a> {
         scratch: &mut Tally,
         touched: usize,
     ) -> Price {
+        let price = self.repriced(plan, base, scratch, touched, None);
+        price.expect("without a ceiling every plan has a price")
+    }
+
+    /// The same, given up with `None` as soon as what has been added up reaches the ceiling. The
+    /// plan's true score then reaches it too, but for the rounding of sums.
+    pub(super) fn repriced(
+        &mut self,
+        plan: &Plan,
+        base: &Tally,
+        scratch: &mut Tally,
+        touched: usize,
+        ceiling: Option<Ceiling>,
+    ) -> Option<Price> {
         self.priced += 1;
         self.remember(plan, Some(touched));
         scratch.follow(base);
@@ -400,6 +436,7 @@ impl<'l, 'a> Clerk<'l, 'a> {
             plan,
             tally: scratch,
             touched: Some(touched),
+            ceiling,
         })
     }
 
@@ -549,18 +586,20 @@ struct Pricing<'w, 'l, 'a> {
     plan: &'w Plan,
     tally: &'w mut Tally,
     touched: Option<usize>,
+    ceiling: Option<Ceiling>,
 }
 
 impl Work for Pricing<'_, '_, '_> {
-    type Answer = Price;
+    type Answer = Option<Price>;
 
     #[inline(always)]
-    fn run(self) -> Price {
+    fn run(self) -> Option<Price> {
         let Pricing {
             clerk,
             plan,
             tally,
             touched,
+            ceiling,
         } = self;
         let ledger = clerk.ledger;
         let groups = ledger.groups();
@@ -600,17 +639,39 @@ impl Work for Pricing<'_, '_, '_> {
                 if touched.is_some() {
                     tally.changed.1.push(k);
                 }
-                output(ledger, plan, tally, k, leg, groups);
+                output(ledger, plan, tally, k, leg);
             }
         }
-        let mut price = Price {
-            area: 0.0,
-            overhead: 0.0,
-            excess: 0.0,
-            error_share: 0.0,
-        };
+        // Area and currents are quickly added up; errors are most of the work, and one of them may
+        // be enough to know that the rest does not matter.
+        let too_dear =
+            |area, excess| ceiling.is_some_and(|c| charged(area, excess, c.charge) >= c.score);
+        let quick = ceiling.map_or(Price::default(), |_| tally.sum(ledger));
+        if too_dear(quick.area, quick.excess) {
+            return None;
+        }
+        let (mut excess, outputs) = (quick.excess, plan.legs.len());
+        let first = if ceiling.is_some() { tally.doubtful } else { 0 };
+        for k in (first.min(outputs)..outputs).chain(0..first.min(outputs)) {
+            if is(&dirty, plan.legs[k]) {
+                excess += output_error(ledger, plan, tally, k, groups);
+                if too_dear(quick.area, excess) {
+                    tally.doubtful = k;
+                    return None;
+                }
+            }
+        }
+        Some(tally.sum(ledger))
+    }
+}
+
+impl Tally {
+    /// Adds up the shares, always in the same order.
+    #[inline(always)]
+    fn sum(&self, ledger: &Ledger) -> Price {
+        let mut price = Price::default();
         let mut references = 0;
-        for share in tally.families.iter().chain(&tally.outputs) {
+        for share in self.families.iter().chain(&self.outputs) {
             price.area += share.area;
             price.overhead += share.overhead;
             price.excess += share.excess;
@@ -690,9 +751,9 @@ fn family(clerk: &Clerk, plan: &Plan, tally: &mut Tally, f: usize, groups: usize
     tally.families[f] = share;
 }
 
-/// Prices output `k` on family `leg`.
+/// Area of output `k` on family `leg`, and whether the leg can live there; its error comes later.
 #[inline(always)]
-fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize, groups: usize) {
+fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize) {
     let want = &ledger.wants[k];
     let member = &plan.members[leg];
     let c = ledger.candidate(member);
@@ -706,23 +767,33 @@ fn output(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, leg: usize,
         // Worse than an output served at twice its limit, whatever the error on paper: a search
         // should not spend on the accuracy of a leg that cannot live here.
         share.excess += 1.5;
-        tally.outputs[k] = share;
-        return;
     }
-    if want.limit.is_infinite() {
-        tally.outputs[k] = share;
-        return;
+    tally.outputs[k] = share;
+}
+
+/// Adds the error of output `k` to its share, where it has a limit and a leg; returns the excess it
+/// adds.
+#[inline(always)]
+fn output_error(ledger: &Ledger, plan: &Plan, tally: &mut Tally, k: usize, groups: usize) -> f64 {
+    let want = &ledger.wants[k];
+    let served = ledger.candidate(&plan.members[plan.legs[k]]).outputs[k].is_some();
+    if want.limit.is_infinite() || !served {
+        return 0.0;
     }
-    for end in 0..2 {
+    let mut ends = [0.0; 2];
+    for (end, share) in ends.iter_mut().enumerate() {
         let mut worst = Lanes::ZERO;
         for g in 0..groups {
             worst = worst.max(error(ledger, plan, tally, k, end, g));
         }
-        share.ends[end] = worst.largest() / want.limit;
+        *share = worst.largest() / want.limit;
     }
-    share.error_share = share.ends[0].max(share.ends[1]);
-    share.excess += compressed(share.error_share - 1.0);
-    tally.outputs[k] = share;
+    let share = &mut tally.outputs[k];
+    share.ends = ends;
+    share.error_share = ends[0].max(ends[1]);
+    let excess = compressed(share.error_share - 1.0);
+    share.excess += excess;
+    excess
 }
 
 /// An excess as the search counts it: itself while it is small; beyond the limit's own size only

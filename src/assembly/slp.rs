@@ -12,6 +12,7 @@ use crate::numeric::scalar::ln;
 use good_lp::{
     Expression, ProblemVariables, Solution, SolverModel, Variable, clarabel, constraint, variable,
 };
+use std::collections::BTreeMap;
 
 /// Finite-difference step, in the variables' own units (about 1 %).
 const STEP: f64 = 0.01;
@@ -187,6 +188,60 @@ fn differentiate(desk: &mut Desk, here: &Point) -> Slopes {
     slopes
 }
 
+/// How far each variable may move down and up: the trust region, lengths within the card.
+fn boxes(desk: &Desk, shapes: &[Shape], radius: f64) -> Vec<Vec<[f64; 2]>> {
+    let of = |f: usize, shape: &Shape| {
+        let tech = desk.ledger.job.tech(desk.plan.members[f].rail);
+        let length = &tech.mosfet().length;
+        let (least, most) = (ln(length.least.0), ln(length.most.0));
+        let limited = |(i, &x): (usize, &f64)| {
+            // Variables 0 and 2 are logarithms of lengths.
+            if i == 0 || (i == 2 && shape.cascode_length > 0.0) {
+                let low = (-radius).max(least - x).min(0.0);
+                [low, radius.min(most - x).max(0.0)]
+            } else {
+                [-radius, radius]
+            }
+        };
+        variables(shape).iter().enumerate().map(limited).collect()
+    };
+    shapes.iter().enumerate().map(|(f, s)| of(f, s)).collect()
+}
+
+/// Limits that can matter somewhere in the boxes: those that can be reached at all and that no
+/// other limit on the same thing exceeds everywhere. The rest would change nothing but the time.
+fn binding(here: &Point, slopes: &Slopes, limits: &[f64], boxes: &[Vec<[f64; 2]>]) -> Vec<usize> {
+    // The most that limit `j`, less limit `i` where there is one, can rise.
+    let rise = |j: usize, i: Option<usize>| -> f64 {
+        let mut sum = 0.0;
+        for (slopes, boxes) in slopes.limits.iter().zip(boxes) {
+            for (slope, [low, high]) in slopes.iter().zip(boxes) {
+                let slope = slope[j] - i.map_or(0.0, |i| slope[i]);
+                sum += (slope * low).max(slope * high);
+            }
+        }
+        sum
+    };
+    let mut reached: Vec<usize> = (0..limits.len())
+        .filter(|&j| limits[j] > FAR && limits[j] + rise(j, None) > 0.0)
+        .collect();
+    reached.sort_by(|&a, &b| {
+        let by_thing = here.limits[a].0.cmp(&here.limits[b].0);
+        by_thing
+            .then(limits[b].total_cmp(&limits[a]))
+            .then(a.cmp(&b))
+    });
+    let mut kept: Vec<usize> = Vec::new();
+    for j in reached {
+        let same = |i: &&usize| here.limits[**i].0 == here.limits[j].0;
+        let hidden = |&i: &usize| limits[i] - limits[j] >= rise(j, Some(i));
+        if !kept.iter().rev().take_while(same).any(hidden) {
+            kept.push(j);
+        }
+    }
+    kept
+}
+
 /// The step that is best on the linearised network within the trust region.
 fn propose(
     desk: &Desk,
@@ -196,47 +251,34 @@ fn propose(
     radius: f64,
 ) -> Option<Vec<Vec<f64>>> {
     let mut vars = ProblemVariables::new();
-    let steps: Vec<Vec<Variable>> = here
-        .shapes
+    let boxes = boxes(desk, &here.shapes, radius);
+    let steps: Vec<Vec<Variable>> = boxes
         .iter()
-        .enumerate()
-        .map(|(f, shape)| {
-            let length = &desk
-                .ledger
-                .job
-                .tech(desk.plan.members[f].rail)
-                .mosfet()
-                .length;
-            let (least, most) = (ln(length.least.0), ln(length.most.0));
-            variables(shape)
-                .iter()
-                .enumerate()
-                .map(|(i, &x)| {
-                    // Variables 0 and 2 are logarithms of lengths.
-                    let (mut low, mut high) = (-radius, radius);
-                    if i == 0 || (i == 2 && shape.cascode_length > 0.0) {
-                        low = low.max(least - x).min(0.0);
-                        high = high.min(most - x).max(0.0);
-                    }
-                    vars.add(variable().min(low).max(high))
-                })
+        .map(|list| {
+            list.iter()
+                .map(|&[low, high]| vars.add(variable().min(low).max(high)))
                 .collect()
         })
         .collect();
-    let near: Vec<usize> = (0..limits.len()).filter(|&j| limits[j] > FAR).collect();
-    let over: Vec<Variable> = near.iter().map(|_| vars.add(variable().min(0.0))).collect();
+    let near = binding(here, slopes, limits, &boxes);
+    // One excess for each thing that is limited: of its limits the worst counts.
+    let mut over: BTreeMap<usize, Variable> = BTreeMap::new();
+    for &j in &near {
+        over.entry(here.limits[j].0)
+            .or_insert_with(|| vars.add(variable().min(0.0)));
+    }
     let mut objective = Expression::default();
     for (f, list) in steps.iter().enumerate() {
         for (i, &v) in list.iter().enumerate() {
             objective.add_mul(slopes.area[f][i], v);
         }
     }
-    for &v in &over {
+    for &v in over.values() {
         objective.add_mul(CHARGE, v);
     }
     let mut model = vars.minimise(objective).using(clarabel);
     model.settings().max_threads(1);
-    for (&j, &slack) in near.iter().zip(&over) {
+    for &j in &near {
         let mut row = Expression::from(limits[j]);
         for (f, list) in steps.iter().enumerate() {
             for (i, &v) in list.iter().enumerate() {
@@ -246,7 +288,7 @@ fn propose(
                 }
             }
         }
-        row.add_mul(-1.0, slack);
+        row.add_mul(-1.0, over[&here.limits[j].0]);
         model.add_constraint(constraint!(row <= 0.0));
     }
     let solution = model.solve().ok()?;

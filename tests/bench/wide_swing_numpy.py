@@ -1,7 +1,10 @@
 #!/usr/bin/env python3
 """The DC solution of the five-transistor wide-swing cascode in batched numpy: the same law with exact
-slopes, the same Newton and the same stopping rule as the program's, over thousands of climates at
-once. Prints solutions per second and the mean output current, for tests/bench/compare.sh.
+slopes, the same Newton, start and stopping rule as the program's. It is batched in two shapes: over
+the corners of one circuit, circuits one after the other as a search meets them, and over as many
+circuits at once as numpy likes best, which a search whose next circuit depends on the last answer
+cannot have. Prints solutions per second of each and the mean output current, for
+tests/bench/compare.sh.
 """
 import sys
 import time
@@ -13,6 +16,8 @@ sys.path.insert(0, str(Path(__file__).resolve().parents[1] / "golden"))
 from charge_model import K_OVER_Q, Card, band_gap  # noqa: E402
 
 CLIMATES = 4096
+CORNERS = 16  # of one circuit: five process corners at three temperatures, in whole lanes
+AT_ONCE = [256, 512, 1024, 2048, 4096]
 CURRENT = 10e-6
 VOUT = 0.6
 MIRROR, CASCODE, BIAS = (8e-6, 1e-6), (8e-6, 0.5e-6), (1.6e-6, 1e-6)
@@ -202,14 +207,28 @@ def main():
     current = CURRENT * (0.8 + 0.4 * ((k * 7919) % CLIMATES) / CLIMATES)
     devices = [Devices(card.n, card.nominal, size, temperature, shift, gain)
                for size in (MIRROR, CASCODE, BIAS)]
+
+    def batches(size):
+        parts = [slice(first, first + size) for first in range(0, CLIMATES, size)]
+        return [([d.take(part) for d in devices], current[part]) for part in parts]
+
+    def rate(size):
+        """Solutions per second in batches of `size`."""
+        work = batches(size)
+        solved, start = 0, time.perf_counter()
+        while time.perf_counter() - start < 2.0:
+            for devices, current in work:
+                solve(devices, current)
+                solved += size
+                if time.perf_counter() - start > 4.0:
+                    break
+        return solved / (time.perf_counter() - start)
+
     _, output = solve(devices, current)
-    runs, start = 0, time.perf_counter()
-    while time.perf_counter() - start < 2.0:
-        solve(devices, current)
-        runs += 1
-    rate = runs * CLIMATES / (time.perf_counter() - start)
     print(f"mean_output_current {np.mean(output):.17g}")
-    print(f"solutions_per_second {rate:.0f}")
+    print(f"solutions_per_second {rate(CORNERS):.0f} {CORNERS}")
+    for size in AT_ONCE:
+        print(f"solutions_per_second {rate(size):.0f} {size}")
 
 
 if __name__ == "__main__":
