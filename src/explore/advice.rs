@@ -132,6 +132,9 @@ const BUDGETS: usize = 8;
 /// Nominal currents are what a plan adds up; at the worst corner they are a little more.
 const NOMINAL: f64 = 0.997;
 
+/// Rounds of local search and refinement where one limit is set free.
+const ROUNDS: usize = 3;
+
 const POLISH: polish::Effort = polish::Effort {
     rounds: 2,
     iterations: 1,
@@ -171,15 +174,26 @@ pub fn explain(
         }
         _ => Vec::new(),
     };
-    observer.stage("asking what would fit", tried.len() as u64);
+    // One task per output: what is not enough with all its limits free is not with one.
+    let mut tasks: Vec<Vec<Limit>> = Vec::new();
+    for limit in tried {
+        match tasks.last_mut() {
+            Some(task) if limit.output().is_some() && task[0].output() == limit.output() => {
+                task.push(limit);
+            }
+            _ => tasks.push(vec![limit]),
+        }
+    }
+    observer.stage("asking what would fit", tasks.len() as u64);
     let done = AtomicU64::new(0);
-    let answers: Vec<(Option<Advice>, Work)> = tried
+    let fresh = !impossible.is_empty();
+    let answers: Vec<(Vec<Advice>, Work)> = tasks
         .par_iter()
-        .map(|&limit| {
+        .map(|limits| {
             let mut work = Work::default();
-            let answer = advisor.alone(limit, drawn, &seeds, !impossible.is_empty(), &mut work);
+            let answers = advisor.singles(limits, drawn, &seeds, fresh, &mut work);
             observer.advance(done.fetch_add(1, Ordering::Relaxed) + 1);
-            (answer, work)
+            (answers, work)
         })
         .collect();
     let mut advice = Vec::new();
@@ -322,32 +336,89 @@ impl<'a> Advisor<'a> {
         seeds
     }
 
-    /// The least relaxation of one limit that was found to suffice alone.
-    fn alone(
+    /// Advice on some limits, each alone: those of one output, or one budget.
+    fn singles(
         &self,
-        limit: Limit,
+        limits: &[Limit],
+        drawn: &[Polished],
+        seeds: &[Sized],
+        fresh: bool,
+        work: &mut Work,
+    ) -> Vec<Advice> {
+        let spec = self.job.spec;
+        if limits.len() > 1 && !fresh {
+            let open = limits
+                .iter()
+                .fold(spec.clone(), |open, &l| match l {
+                    // A range cannot be given up from both of its ends.
+                    Limit::HighEnd(_) => open,
+                    _ => l.set(&open, l.loosest(spec)),
+                });
+            let hopeless = |fit: Fit| fit.gap > WITHIN;
+            let fit = seeds.first().and_then(|s| self.fit(&open, s, 0.25, work));
+            if fit.is_none_or(hopeless) {
+                return Vec::new();
+            }
+        }
+        limits
+            .iter()
+            .filter_map(|&limit| {
+                if self.stopped() {
+                    return None;
+                }
+                match limit {
+                    Limit::Area => self.area(drawn, seeds, fresh, work),
+                    Limit::OverheadCurrent | Limit::Power => {
+                        self.current(limit, seeds, fresh, work)
+                    }
+                    _ => {
+                        let (value, network) = self.sized(spec, limit, seeds, fresh, work)?;
+                        self.verified(&[(limit, value)], &network, work)
+                    }
+                }
+            })
+            .collect()
+    }
+
+    /// The least area: of the networks that keep everything else, or of what further rounds of local
+    /// search and refinement make of the structures found.
+    fn area(
+        &self,
         drawn: &[Polished],
         seeds: &[Sized],
         fresh: bool,
         work: &mut Work,
     ) -> Option<Advice> {
         let spec = self.job.spec;
-        if self.stopped() {
-            return None;
-        }
-        match limit {
-            Limit::Area => {
-                let kept = drawn.iter().filter(|p| p.excess == 0.0);
-                let least = kept.min_by(|a, b| a.measured.area.total_cmp(&b.measured.area))?;
-                let value = limit.outward(least.measured.area);
-                self.verified(&[(limit, value)], least, work)
+        let open = Limit::Area.set(spec, Limit::Area.loosest(spec));
+        let kept = drawn.iter().filter(|p| p.excess == 0.0);
+        let least = kept.min_by(|a, b| a.measured.area.total_cmp(&b.measured.area));
+        let mut best: Option<Polished> = least.cloned();
+        let budget = spec.overhead_limit() * NOMINAL;
+        for round in 0..ROUNDS {
+            let mut starts: Vec<Sized> = best.iter().map(|b| Sized::of(&b.network)).collect();
+            if round == 0 {
+                starts.extend(seeds.iter().cloned());
             }
-            Limit::OverheadCurrent | Limit::Power => self.current(limit, seeds, fresh, work),
-            _ => {
-                let (value, polished) = self.sized(spec, limit, seeds, fresh, work)?;
-                self.verified(&[(limit, value)], &polished, work)
+            let found = self.searched(&open, &starts, fresh || best.is_none(), budget, work);
+            let Some(Ok(next)) = found.map(|f| self.drawn(&open, &f.sized, work)) else {
+                break;
+            };
+            let gain = match &best {
+                Some(best) => 1.0 - next.measured.area / best.measured.area,
+                None => 1.0,
+            };
+            if gain <= 0.0 {
+                break;
+            }
+            best = Some(next);
+            if gain < NEARLY {
+                break;
             }
         }
+        let best = best?;
+        let value = Limit::Area.outward(best.measured.area);
+        self.verified(&[(Limit::Area, value)], &best, work)
     }
 
     /// The advice to make some changes, if a network keeps every limit of the spec so relaxed, as
@@ -458,14 +529,7 @@ impl<'a> Advisor<'a> {
         }
         let budget = spec.overhead_limit() * NOMINAL;
         let open = limit.set(spec, loosest);
-        let mut best: Option<Fit> = None;
-        for seed in seeds {
-            if let Some(fit) = self.fit(&open, seed, 0.25, work)
-                && best.as_ref().is_none_or(|b| fit.gap < b.gap)
-            {
-                best = Some(fit);
-            }
-        }
+        let mut best = seeds.first().and_then(|s| self.fit(&open, s, 0.25, work));
         let best_gap = best.as_ref().map_or(f64::INFINITY, |b| b.gap);
         if (best_gap > WITHIN && !fresh) || self.stopped() {
             return None;
@@ -603,7 +667,20 @@ impl<'a> Advisor<'a> {
         };
         let open = limit.set(spec, limit.loosest(spec));
         let most = open.overhead_limit() * NOMINAL;
-        let top = self.searched(&open, seeds, true, most, work)?;
+        let mut top = self.searched(&open, seeds, true, most, work)?;
+        for _ in 1..ROUNDS {
+            let starts = [top.sized.clone()];
+            let Some(next) = self.searched(&open, &starts, false, most, work) else {
+                break;
+            };
+            let gain = top.gap - next.gap;
+            if gain > 0.0 {
+                top = next;
+            }
+            if gain < NEARLY {
+                break;
+            }
+        }
         if top.gap > WITHIN {
             return None;
         }
