@@ -8,10 +8,10 @@
 //! every corner, breaks no limit of the relaxed spec. "Least" is therefore the least that was found:
 //! that it suffices is verified, that nothing less would is not proved.
 
+use super::Observer;
 use super::describe;
 use super::limit::Limit;
 use super::outcome::NetworkReport;
-use super::{NEARLY_SAME, Observer};
 use crate::assembly::alone::{self, Reach};
 use crate::assembly::build;
 use crate::assembly::plan::{Plan, Price};
@@ -24,7 +24,7 @@ use crate::network::work::Work;
 use crate::network::{Job, corners, measure};
 use crate::numeric::scalar::ln;
 use crate::search;
-use crate::spec::{Effort, Rail, Spec};
+use crate::spec::{Rail, Spec};
 use rayon::prelude::*;
 use serde::Serialize;
 use std::sync::atomic::{AtomicBool, AtomicU64, Ordering};
@@ -126,12 +126,14 @@ const CLOSING: usize = 4;
 /// Steps of a drawn network around the value found on paper: half a per cent, or 2 mV.
 const NUDGE: [f64; 2] = [0.005, 0.002];
 /// Doublings of that step at most.
-const NUDGES: usize = 5;
+const NUDGES: usize = 7;
 /// Budgets tried between a limit of current and the current of the least network.
 const BUDGETS: usize = 8;
 /// Nominal currents are what a plan adds up; at the worst corner they are a little more.
 const NOMINAL: f64 = 0.997;
 
+/// Shapes solved again where a question is about the end of a range, where legs are probed.
+const SOLVED_AGAIN: usize = 1500;
 /// Rounds of local search and refinement where one limit is set free.
 const ROUNDS: usize = 3;
 
@@ -159,7 +161,7 @@ pub fn explain(
     let spec = job.spec;
     let (reach, solutions) = alone::reach(job, pool, stop);
     work.dc_solutions += solutions;
-    let (impossible, first) = advisor.impossible(&reach, work);
+    let (impossible, edges, first) = advisor.impossible(&reach, work);
     let seeds = advisor.seeds(drawn);
     // Where one thing is out of reach at any size, only its own limits can help; where several are,
     // no single one can.
@@ -186,12 +188,13 @@ pub fn explain(
     }
     observer.stage("asking what would fit", tasks.len() as u64);
     let done = AtomicU64::new(0);
+    // A network that serves what no network can tells little about one for another spec.
     let fresh = !impossible.is_empty();
     let answers: Vec<(Vec<Advice>, Work)> = tasks
         .par_iter()
         .map(|limits| {
             let mut work = Work::default();
-            let answers = advisor.singles(limits, drawn, &seeds, fresh, &mut work);
+            let answers = advisor.singles(limits, &edges, drawn, &seeds, fresh, &mut work);
             observer.advance(done.fetch_add(1, Ordering::Relaxed) + 1);
             (answers, work)
         })
@@ -217,6 +220,9 @@ fn add(work: &mut Work, spent: &Work) {
     work.polish_evaluations += spent.polish_evaluations;
     work.networks_verified += spent.networks_verified;
 }
+
+/// Limits with values.
+type Changes = Vec<(Limit, f64)>;
 
 struct Advisor<'a> {
     job: Job<'a>,
@@ -245,14 +251,16 @@ impl<'a> Advisor<'a> {
         }
     }
 
-    /// What no network of any size can do, and the limit that is easiest to loosen for each.
+    /// What no network of any size can do; where each limit concerned would come within reach; and
+    /// of those the one that is easiest to loosen for each.
     fn impossible(
         &self,
         reach: &[Option<Reach>],
         work: &mut Work,
-    ) -> (Vec<Impossible>, Vec<(Limit, f64)>) {
+    ) -> (Vec<Impossible>, Changes, Changes) {
         let spec = self.job.spec;
         let mut list = Vec::new();
+        let mut edges = Vec::new();
         let mut first = Vec::new();
         let mut note = |output: Option<String>, nearest: Vec<(Limit, f64)>| {
             let nearest: Vec<(Limit, f64)> = nearest
@@ -268,6 +276,7 @@ impl<'a> Advisor<'a> {
                 .copied()
                 .min_by(|a, b| share(a).total_cmp(&share(b)));
             first.extend(easiest);
+            edges.extend(nearest.iter().copied());
             list.push(Impossible {
                 output,
                 nearest: nearest
@@ -283,9 +292,9 @@ impl<'a> Advisor<'a> {
                 (Limit::OverheadCurrent, reference),
                 (Limit::Power, reference * spec.supply.most.0),
             ];
-            let short = least.into_iter().filter(|&(limit, value)| {
-                limit.value(spec).is_some_and(|asked| asked < value)
-            });
+            let short = least
+                .into_iter()
+                .filter(|&(limit, value)| limit.value(spec).is_some_and(|asked| asked < value));
             for one in short {
                 note(None, vec![one]);
             }
@@ -318,7 +327,7 @@ impl<'a> Advisor<'a> {
                 .collect();
             note(Some(spec.outputs[k].name.clone()), nearest);
         }
-        (list, first)
+        (list, edges, first)
     }
 
     /// The networks nearest to the spec, different ones, nearest first.
@@ -340,6 +349,7 @@ impl<'a> Advisor<'a> {
     fn singles(
         &self,
         limits: &[Limit],
+        edges: &[(Limit, f64)],
         drawn: &[Polished],
         seeds: &[Sized],
         fresh: bool,
@@ -347,13 +357,11 @@ impl<'a> Advisor<'a> {
     ) -> Vec<Advice> {
         let spec = self.job.spec;
         if limits.len() > 1 && !fresh {
-            let open = limits
-                .iter()
-                .fold(spec.clone(), |open, &l| match l {
-                    // A range cannot be given up from both of its ends.
-                    Limit::HighEnd(_) => open,
-                    _ => l.set(&open, l.loosest(spec)),
-                });
+            let open = limits.iter().fold(spec.clone(), |open, &l| match l {
+                // A range cannot be given up from both of its ends.
+                Limit::HighEnd(_) => open,
+                _ => l.set(&open, l.loosest(spec)),
+            });
             let hopeless = |fit: Fit| fit.gap > WITHIN;
             let fit = seeds.first().and_then(|s| self.fit(&open, s, 0.25, work));
             if fit.is_none_or(hopeless) {
@@ -372,7 +380,8 @@ impl<'a> Advisor<'a> {
                         self.current(limit, seeds, fresh, work)
                     }
                     _ => {
-                        let (value, network) = self.sized(spec, limit, seeds, fresh, work)?;
+                        let edge = edges.iter().find(|e| e.0 == limit).map(|e| e.1);
+                        let (value, network) = self.sized(limit, edge, seeds, fresh, work)?;
                         self.verified(&[(limit, value)], &network, work)
                     }
                 }
@@ -467,16 +476,21 @@ impl<'a> Advisor<'a> {
         work: &mut Work,
     ) -> Option<Fit> {
         let job = self.job_of(spec);
-        let probed = [Rail::Sink, Rail::Source]
-            .iter()
-            .all(|&rail| crate::network::probes::Probes::of(&job, rail) == self.pool.probes[rail as usize]);
+        let probed = [Rail::Sink, Rail::Source].iter().all(|&rail| {
+            crate::network::probes::Probes::of(&job, rail) == self.pool.probes[rail as usize]
+        });
         let swept;
         let pool = if probed {
             self.pool
         } else {
-            let mut own = Work::default();
-            swept = search::pool::sweep_at(&job, Effort::Quick, &mut own, &|_, _| {}, self.stop);
-            add(work, &own);
+            let known: usize = self.pool.shapes.iter().map(Vec::len).sum();
+            swept = search::pool::again(
+                &job,
+                self.pool,
+                known.div_ceil(SOLVED_AGAIN),
+                work,
+                self.stop,
+            );
             &swept
         };
         if self.stopped() {
@@ -512,17 +526,18 @@ impl<'a> Advisor<'a> {
         }
     }
 
-    /// The least value of a limit that sizes decide (all but those of current), the other limits of
-    /// `spec` kept, and the network that keeps it.
+    /// The least value of a limit that sizes decide (all but the budgets), the others kept, and the
+    /// network that keeps it. Inside of `edge` nothing is possible.
     fn sized(
         &self,
-        spec: &Spec,
         limit: Limit,
+        edge: Option<f64>,
         seeds: &[Sized],
         fresh: bool,
         work: &mut Work,
     ) -> Option<(f64, Polished)> {
-        let start = limit.value(spec)?;
+        let spec = self.job.spec;
+        let start = edge.or(limit.value(spec))?;
         let loosest = limit.loosest(spec);
         if !limit.looser(loosest, start) {
             return None;
@@ -545,14 +560,29 @@ impl<'a> Advisor<'a> {
         let best = best.filter(|b| b.gap <= NEARLY)?;
         let (inside, outside) = (limit.place(start), limit.place(loosest));
         let (mut place, mut fit) = self.close(spec, limit, [inside, outside], best, work);
-        // What local search makes of it where it will stand, not where everything goes.
-        let there = limit.set(spec, limit.at(place));
-        let starts = [fit.sized.clone()];
-        if let Some(found) = self.searched(&there, &starts, fresh, budget, work)
-            && found.gap < fit.gap - NEARLY_SAME
-            && found.gap <= 0.0
-        {
-            (place, fit) = self.close(spec, limit, [inside, place], found, work);
+        // What local search makes of it, where it stands and then further in: a dearer cell may
+        // reach further than the one that was least where everything goes.
+        let (mut aim, mut dead) = (place, inside);
+        for _ in 0..=ROUNDS {
+            if self.stopped() {
+                break;
+            }
+            let there = limit.set(spec, limit.at(aim));
+            let starts = [fit.sized.clone()];
+            let found = self.searched(&there, &starts, fresh, budget, work);
+            match found.filter(|f| f.gap <= 0.0) {
+                Some(found) => {
+                    let (next, better) = self.close(spec, limit, [dead, aim], found, work);
+                    if next < place {
+                        (place, fit) = (next, better);
+                    }
+                }
+                None => dead = dead.max(aim.min(place)),
+            }
+            if place - dead < STEP[usize::from(limit.end().is_some())] {
+                break;
+            }
+            aim = (dead + place) / 2.0;
         }
         self.settle(spec, limit, place, &fit.sized, work)
     }
@@ -625,27 +655,48 @@ impl<'a> Advisor<'a> {
             if !limit.looser(value, own) {
                 return None;
             }
-            let network = self.drawn(&limit.set(spec, value), from, work).ok()?;
+            let there = limit.set(spec, value);
+            // Sized for this very place: there may be less to do than a polish can.
+            let sized = self.fit(&there, from, 0.1, work)?.sized;
+            let network = self.drawn(&there, &sized, work).ok()?;
             Some((value, network))
         };
         let mut found = draw(place, work);
-        let inwards = found.is_some();
         let mut step = nudge;
-        for _ in 0..NUDGES {
-            if self.stopped() {
-                break;
-            }
-            let next = draw(if inwards { place - step } else { place + step }, work);
-            match (inwards, next) {
-                (true, Some(better)) => found = Some(better),
-                (true, None) => break,
-                (false, Some(first)) => {
-                    found = Some(first);
+        if found.is_some() {
+            for _ in 0..NUDGES {
+                let better = if self.stopped() {
+                    None
+                } else {
+                    draw(place - step, work)
+                };
+                if better.is_none() {
                     break;
                 }
-                (false, None) => {}
+                found = better;
+                step *= 2.0;
             }
+            return found;
+        }
+        let mut dead = place;
+        for _ in 0..NUDGES {
+            if self.stopped() {
+                return None;
+            }
+            found = draw(place + step, work);
+            if found.is_some() {
+                break;
+            }
+            dead = place + step;
             step *= 2.0;
+        }
+        let mut alive = place + step;
+        while found.is_some() && alive - dead > 2.0 * nudge && !self.stopped() {
+            let middle = (dead + alive) / 2.0;
+            match draw(middle, work) {
+                Some(better) => (alive, found) = (middle, Some(better)),
+                None => dead = middle,
+            }
         }
         found
     }
@@ -718,7 +769,12 @@ impl<'a> Advisor<'a> {
         }
         let (_, polished) = best?;
         // What it takes at its worst corner, rather than what it was allowed.
-        let amps = polished.measured.overhead.iter().copied().fold(0.0, f64::max);
+        let amps = polished
+            .measured
+            .overhead
+            .iter()
+            .copied()
+            .fold(0.0, f64::max);
         let value = limit.outward(amps * volts);
         self.verified(&[(limit, value)], &polished, work)
     }
@@ -733,40 +789,45 @@ impl<'a> Advisor<'a> {
         seeds: &[Sized],
         work: &mut Work,
     ) -> Option<Advice> {
-        /// Beyond the edge of what is possible, networks get infinitely large.
-        const ROOM: f64 = 0.05;
+        /// Beyond the edge of what is possible, networks get infinitely large: room on the limit's
+        /// own scale, as a share of the value for a voltage.
+        const ROOMS: [f64; 3] = [0.1, 0.3, 0.8];
         let own = self.job.spec;
-        let mut changes: Vec<(Limit, f64)> = first
-            .iter()
-            .map(|&(limit, value)| {
-                let room = match limit.end() {
-                    Some(_) => ROOM * value.abs().max(0.1),
-                    None => ROOM,
-                };
-                let place = limit.place(value) + room;
-                let most = limit.place(limit.loosest(own));
-                (limit, limit.outward(limit.at(place.min(most))))
-            })
-            .collect();
-        let mut near: Vec<Polished> = Vec::new();
-        if changes.is_empty() {
-            near.extend(drawn.iter().cloned());
-        } else {
+        let mut changes: Changes = Vec::new();
+        let mut near: Vec<Polished> = drawn.to_vec();
+        for room in ROOMS {
+            if first.is_empty() || self.stopped() {
+                break;
+            }
+            changes = first
+                .iter()
+                .map(|&(limit, value)| {
+                    let room = match limit.end() {
+                        Some(_) => room * value.abs().max(0.1),
+                        None => room,
+                    };
+                    let place = limit.place(value) + room;
+                    let most = limit.place(limit.loosest(own));
+                    (limit, limit.outward(limit.at(place.min(most))))
+                })
+                .collect();
             let spec = relaxed(own, &changes);
             let budget = spec.overhead_limit() * NOMINAL;
             let found = self.searched(&spec, seeds, true, budget, work)?;
             let limits = Limits::of(self.job_of(&spec));
-            let (polished, evaluations, solutions) =
-                limits.drawn(&found.sized, POLISH, self.seed);
+            let (polished, evaluations, solutions) = limits.drawn(&found.sized, POLISH, self.seed);
             work.polish_evaluations += evaluations;
             work.dc_solutions += solutions;
-            near.extend(polished);
+            near = polished.into_iter().collect();
+            if near.iter().any(|p| missing(&spec, p) == 0.0) {
+                break;
+            }
         }
         let spec = relaxed(own, &changes);
         let nearest = near
             .iter()
             .min_by(|a, b| missing(&spec, a).total_cmp(&missing(&spec, b)))?;
-        self.let_go(&spec, nearest, &mut changes)?;
+        self.let_go(nearest, &mut changes)?;
         let mut best = self.verified(&changes, nearest, work)?;
         let mut network = nearest.clone();
         // The costliest change first: it is the one to be rid of.
@@ -795,7 +856,9 @@ impl<'a> Advisor<'a> {
                     .map(|network| (None, network)),
                 _ => self.taken_back(&spec, limit, value, &from, work),
             };
-            let Some((value, better)) = taken else { continue };
+            let Some((value, better)) = taken else {
+                continue;
+            };
             let mut next = changes.clone();
             match value {
                 Some(value) => next[i].1 = value,
@@ -820,42 +883,49 @@ impl<'a> Advisor<'a> {
         Some(best)
     }
 
-    /// Adds to the changes what a network still breaks, as far as it breaks it. `None` where
-    /// something is broken that no limit sets.
-    fn let_go(
-        &self,
-        spec: &Spec,
-        polished: &Polished,
-        changes: &mut Vec<(Limit, f64)>,
-    ) -> Option<()> {
-        let job = self.job_of(spec);
-        let corners = corners::verified(&job);
-        let mut bench = Bench::new(job, corners.clone());
-        let mut measured = measure::measure(&job, &mut bench, &polished.network).ok()?;
-        measure::headroom(&job, &mut bench, &mut measured).ok()?;
-        for broken in describe::broken(&job, &measured, &corners) {
-            let k = || {
-                let name = broken.output.as_ref()?;
-                spec.outputs.iter().position(|o| &o.name == name)
-            };
-            let limit = match broken.figure.as_str() {
-                "area" => Limit::Area,
-                "overhead_current" => Limit::OverheadCurrent,
-                "power" => Limit::Power,
-                "current_error" => Limit::Accuracy(k()?),
-                "headroom" => Limit::LowEnd(k()?),
-                "output_resistance" => Limit::OutputResistance(k()?),
-                "reference_voltage" if broken.value > broken.limit => Limit::PinMost,
-                "reference_voltage" => Limit::PinLeast,
-                _ => return None,
-            };
-            let value = limit.outward(broken.value);
-            match changes.iter_mut().find(|c| c.0 == limit) {
-                Some(change) => change.1 = value,
-                None => changes.push((limit, value)),
+    /// Adds to the changes what a network still breaks, as far as it breaks it, until it breaks
+    /// nothing. `None` where something is broken that no limit sets.
+    fn let_go(&self, polished: &Polished, changes: &mut Changes) -> Option<()> {
+        /// The end of a range moves what an output is measured by; a few rounds settle that.
+        const ROUNDS: usize = 12;
+        for _ in 0..ROUNDS {
+            let spec = relaxed(self.job.spec, changes);
+            let job = self.job_of(&spec);
+            let corners = corners::verified(&job);
+            let mut bench = Bench::new(job, corners.clone());
+            let mut measured = measure::measure(&job, &mut bench, &polished.network).ok()?;
+            measure::headroom(&job, &mut bench, &mut measured).ok()?;
+            let broken = describe::broken(&job, &measured, &corners);
+            if broken.is_empty() {
+                return Some(());
+            }
+            for broken in broken {
+                let k = || {
+                    let name = broken.output.as_ref()?;
+                    spec.outputs.iter().position(|o| &o.name == name)
+                };
+                let limit = match broken.figure.as_str() {
+                    "area" => Limit::Area,
+                    "overhead_current" => Limit::OverheadCurrent,
+                    "power" => Limit::Power,
+                    "current_error" => Limit::Accuracy(k()?),
+                    "headroom" => Limit::LowEnd(k()?),
+                    "output_resistance" => Limit::OutputResistance(k()?),
+                    "reference_voltage" if broken.value > broken.limit => Limit::PinMost,
+                    "reference_voltage" => Limit::PinLeast,
+                    _ => return None,
+                };
+                let mut value = limit.outward(broken.value);
+                if !limit.looser(value, limit.value(&spec)?) {
+                    value = limit.step_out(limit.value(&spec)?);
+                }
+                match changes.iter_mut().find(|c| c.0 == limit) {
+                    Some(change) => change.1 = value,
+                    None => changes.push((limit, value)),
+                }
             }
         }
-        Some(())
+        None
     }
 
     /// Takes one of several changes back: whole (`None`) or to a lesser value.
@@ -875,9 +945,7 @@ impl<'a> Advisor<'a> {
         let places = [limit.place(start), limit.place(value)];
         let (place, fit) = self.close(spec, limit, places, fit, work);
         let (less, network) = self.settle(spec, limit, place, &fit.sized, work)?;
-        limit
-            .looser(value, less)
-            .then_some((Some(less), network))
+        limit.looser(value, less).then_some((Some(less), network))
     }
 }
 
@@ -885,9 +953,9 @@ impl<'a> Advisor<'a> {
 const LEVELS: usize = 5;
 
 fn relaxed(spec: &Spec, changes: &[(Limit, f64)]) -> Spec {
-    changes
-        .iter()
-        .fold(spec.clone(), |spec, &(limit, value)| limit.set(&spec, value))
+    changes.iter().fold(spec.clone(), |spec, &(limit, value)| {
+        limit.set(&spec, value)
+    })
 }
 
 /// Overhead current of a plan, A.

@@ -162,7 +162,11 @@ impl Limit {
             Limit::Power => 10.0,
             Limit::PinLeast => 0.0,
             Limit::PinMost => spec.supply.least.0,
-            Limit::Accuracy(_) => 1.0,
+            // Half off is no current to speak of any more.
+            Limit::Accuracy(k) => {
+                let own = spec.outputs[k].accuracy.map_or(0.0, |a| a.limit);
+                own.max(0.5)
+            }
             // A range of a tenth of a volt at least, or as much as there is.
             Limit::LowEnd(k) => {
                 let range = spec.outputs[k].range;

@@ -6,7 +6,8 @@
 
 use super::{Files, Format, view, words};
 use crate::explore::{
-    Advice, Broken, Change, DeviceRow, Explanation, FamilyReport, FigureValue, NetworkReport, Outcome, OutputReport, Status,
+    Advice, Broken, Change, DeviceRow, Explanation, FamilyReport, FigureValue, NetworkReport,
+    Outcome, OutputReport, Status,
 };
 use crate::spec::{AccuracyOf, Effort, Flow, Output, Reference, Spec, Target};
 use crate::units;

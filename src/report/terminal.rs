@@ -49,7 +49,11 @@ pub fn summary(outcome: &Outcome, width: usize) -> String {
         text.push('\n');
         paragraph(&mut text, words::cause(why), 0);
         for impossible in &why.impossible {
-            paragraph(&mut text, &format!("- {}", words::impossible(impossible)), 2);
+            paragraph(
+                &mut text,
+                &format!("- {}", words::impossible(impossible)),
+                2,
+            );
         }
         paragraph(&mut text, words::advice_title(why), 0);
         for advice in &why.advice {

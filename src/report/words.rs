@@ -1,7 +1,9 @@
 //! The words of a report, in one place: labels, sentences and cautions that several formats share.
 
 use super::{format, view};
-use crate::explore::{Advice, Broken, Change, Explanation, Impossible, NetworkReport, Outcome, Status};
+use crate::explore::{
+    Advice, Broken, Change, Explanation, Impossible, NetworkReport, Outcome, Status,
+};
 use crate::spec::{AccuracyOf, Flow, Output, Rail, Reference, Target};
 use crate::units;
 
@@ -176,7 +178,10 @@ pub fn impossible(impossible: &Impossible) -> String {
     if nearest.is_empty() {
         format!("{subject}; none of its limits alone could give enough.")
     } else {
-        format!("{subject}; the nearest possible is {}.", nearest.join(", or "))
+        format!(
+            "{subject}; the nearest possible is {}.",
+            nearest.join(", or ")
+        )
     }
 }
 

@@ -631,16 +631,15 @@ pub fn nothing_fits() -> Outcome {
         },
     ];
     nearest.broken = broken.clone();
-    let change = |key: &str, end: Option<&str>, output: Option<&str>, limits: [f64; 2], unit: &str| {
-        Change {
+    let change =
+        |key: &str, end: Option<&str>, output: Option<&str>, limits: [f64; 2], unit: &str| Change {
             key: key.to_owned(),
             end: end.map(str::to_owned),
             output: output.map(str::to_owned),
             from: limits[0],
             to: limits[1],
             unit: unit.to_owned(),
-        }
-    };
+        };
     let resistance = change(
         "output_resistance",
         None,
