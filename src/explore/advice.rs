@@ -132,6 +132,9 @@ const BUDGETS: usize = 8;
 /// Nominal currents are what a plan adds up; at the worst corner they are a little more.
 const NOMINAL: f64 = 0.997;
 
+/// Up to so many outputs local search is cheap: it is asked about every limit. Beyond, only about
+/// those that come near with the structures at hand.
+const FEW: usize = 6;
 /// Shapes solved again where a question is about the end of a range, where legs are probed.
 const SOLVED_AGAIN: usize = 1500;
 /// Rounds of local search and refinement where one limit is set free.
@@ -189,7 +192,7 @@ pub fn explain(
     observer.stage("asking what would fit", tasks.len() as u64);
     let done = AtomicU64::new(0);
     // A network that serves what no network can tells little about one for another spec.
-    let fresh = !impossible.is_empty();
+    let fresh = !impossible.is_empty() || spec.outputs.len() <= FEW;
     let answers: Vec<(Vec<Advice>, Work)> = tasks
         .par_iter()
         .map(|limits| {
@@ -403,6 +406,15 @@ impl<'a> Advisor<'a> {
         let kept = drawn.iter().filter(|p| p.excess == 0.0);
         let least = kept.min_by(|a, b| a.measured.area.total_cmp(&b.measured.area));
         let mut best: Option<Polished> = least.cloned();
+        if best.is_none() {
+            // What nearly keeps everything may do so after another polish.
+            let mut near: Vec<&Polished> = drawn.iter().collect();
+            near.sort_by(|a, b| a.excess.total_cmp(&b.excess));
+            best = near
+                .into_iter()
+                .take(SEEDS)
+                .find_map(|p| self.drawn(&open, &Sized::of(&p.network), work).ok());
+        }
         let budget = spec.overhead_limit() * NOMINAL;
         for round in 0..ROUNDS {
             let mut starts: Vec<Sized> = best.iter().map(|b| Sized::of(&b.network)).collect();
