@@ -1,8 +1,12 @@
 //! The pipeline on one screen: spec -> pool -> networks -> front -> [`Outcome`].
 
+mod advice;
 mod describe;
+mod limit;
 mod outcome;
 
+pub use advice::{Advice, Change, Explanation, Impossible};
+pub use limit::Limit;
 pub use outcome::*;
 
 use crate::assembly::build;
@@ -82,7 +86,12 @@ pub fn explore(job: &Job, observer: &dyn Observer, stop: &AtomicBool) -> Outcome
             job, &pool, tighten, &effort, observer, stop, &mut work,
         ));
     }
-    finish(job, drawn, work, stop)
+    let mut outcome = finish(job, &drawn, work, stop);
+    if let Status::NothingFits { why, .. } = &mut outcome.status {
+        let work = &mut outcome.work;
+        *why = advice::explain(job, &pool, &drawn, observer, stop, work);
+    }
+    outcome
 }
 
 /// Networks for one scale of the accuracy limits, down a ladder of overhead budgets.
@@ -305,7 +314,7 @@ fn count(work: &mut Work, proved: Option<bool>) {
 }
 
 /// The front of what was drawn, or the network that comes closest.
-fn finish(job: &Job, drawn: Vec<Polished>, mut work: Work, stop: &AtomicBool) -> Outcome {
+fn finish(job: &Job, drawn: &[Polished], mut work: Work, stop: &AtomicBool) -> Outcome {
     let corners = corners::verified(job);
     let mut bench = Bench::new(*job, corners.clone());
     let mut fine = Bench::new(*job, corners::with_nominal_supply(job));
@@ -318,7 +327,7 @@ fn finish(job: &Job, drawn: Vec<Polished>, mut work: Work, stop: &AtomicBool) ->
     let mut fits = Vec::new();
     let mut nearest: Option<NetworkReport> = None;
     let breach = |r: &NetworkReport| r.broken.iter().map(breach_of).sum::<f64>();
-    for p in &drawn {
+    for p in drawn {
         let Some(described) = report(p) else { continue };
         if described.broken.is_empty() {
             fits.push(described);
@@ -372,7 +381,10 @@ fn finish(job: &Job, drawn: Vec<Polished>, mut work: Work, stop: &AtomicBool) ->
             .as_ref()
             .map(|n| n.broken.clone())
             .unwrap_or_default();
-        Status::NothingFits { broken }
+        Status::NothingFits {
+            broken,
+            why: Explanation::default(),
+        }
     } else {
         Status::Found
     };

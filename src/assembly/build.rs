@@ -1,6 +1,6 @@
 //! From paper to drawing: a plan's shapes sized, snapped to the manufacturing grid, and joined.
 
-use super::plan::{Ledger, Plan, units_for};
+use super::plan::{Ledger, Member, Plan, units_for};
 use crate::cells::{CELLS, Shape};
 use crate::network::{BiasLeg, Family, Job, Leg, Network, Source};
 use crate::spec::Reference;
@@ -76,4 +76,28 @@ pub fn shapes(ledger: &Ledger, plan: &Plan) -> Vec<Shape> {
         .iter()
         .map(|m| ledger.pool.shapes[m.rail as usize][ledger.candidate(m).index].shape)
         .collect()
+}
+
+/// The plan and the shapes a network was drawn from. Its members name no candidates: only a desk,
+/// which gives every member a shape of its own, can use it.
+pub fn plan_of(network: &Network) -> (Plan, Vec<Shape>) {
+    let parent = |source: Source| match source {
+        Source::Reference => None,
+        Source::Family { parent, .. } => Some(parent),
+    };
+    let members = network
+        .families
+        .iter()
+        .map(|family| Member {
+            rail: family.rail,
+            candidate: 0,
+            current: family.input_current,
+            units: family.input_units,
+            parent: parent(family.feed),
+            bias: family.bias.as_ref().map(|b| (b.current, parent(b.feed))),
+        })
+        .collect();
+    let legs = network.legs.iter().map(|leg| leg.family).collect();
+    let shapes = network.families.iter().map(|f| f.shape).collect();
+    (Plan { members, legs }, shapes)
 }

@@ -2,7 +2,7 @@
 //! sizes are tried.
 
 use super::candidates::{Candidate, Want};
-use super::plan::{Clerk, Ledger, Plan, Tally};
+use super::plan::{Clerk, Ledger, Plan, Price, Tally};
 use crate::cells::solved::{Solved, Solver};
 use crate::cells::{CELLS, Shape};
 use crate::network::corners;
@@ -118,8 +118,8 @@ impl<'l, 'a> Desk<'l, 'a> {
         true
     }
 
-    /// Area with every excess charged, um^2.
-    pub(super) fn cost(&mut self) -> f64 {
+    /// What the plan costs with the present shapes.
+    pub(super) fn price(&mut self) -> Price {
         self.evaluations += 1;
         let ledger = Ledger {
             pool: &self.pool,
@@ -128,7 +128,12 @@ impl<'l, 'a> Desk<'l, 'a> {
             budget: self.budget,
             ..self.ledger.clone()
         };
-        let price = Clerk::new(&ledger).price(&self.plan, &mut Tally::new());
+        Clerk::new(&ledger).price(&self.plan, &mut Tally::new())
+    }
+
+    /// Area with every excess charged, um^2.
+    pub(super) fn cost(&mut self) -> f64 {
+        let price = self.price();
         (price.area + self.charge * price.excess) * 1e12
     }
 

@@ -15,7 +15,7 @@ use rand_pcg::Pcg64Mcg;
 use std::sync::atomic::{AtomicBool, Ordering};
 
 /// Units tried for an input leg.
-const UNITS: [u32; 13] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16, 20, 30, 40];
+pub(super) const UNITS: [u32; 13] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16, 20, 30, 40];
 
 /// What the search may use.
 #[derive(Debug, Clone)]

@@ -2,6 +2,7 @@
 //! way (column generation), which of them to build (MILP), and whether a change of one family
 //! makes the whole cheaper.
 
+pub mod alone;
 pub mod build;
 pub mod candidates;
 pub mod columns;
@@ -11,5 +12,6 @@ pub mod master;
 pub mod milp;
 pub mod plan;
 pub mod polish;
+pub mod resize;
 mod slp;
 pub mod workshop;

@@ -4,10 +4,12 @@
 use super::build;
 use super::candidates::{Candidate, Want, wants};
 use super::columns::{Feeds, generate};
+use super::desk::Desk;
 use super::improve::{Menu, Scored, Search};
 use super::milp::{Instance, assemble, instances, instances_of_columns};
 use super::plan::{Clerk, Ledger, Plan};
 use super::polish;
+use super::resize::Sized;
 use crate::cells::solved::Solved;
 use crate::network::Job;
 use crate::network::probes::Pool;
@@ -152,6 +154,21 @@ impl<'a> Workshop<'a> {
     pub fn score(&self, budget: f64, plan: &Plan) -> Scored {
         let ledger = self.ledger(budget);
         Search::new(&ledger, &self.menu, self.stop).score(plan.clone())
+    }
+
+    /// Puts the shapes of a structure from elsewhere on the shelf, and returns its plan; `None`
+    /// where one of them cannot be solved here.
+    pub fn adopt(&mut self, from: &Sized, work: &mut Work) -> Option<Plan> {
+        let solved = {
+            let ledger = self.ledger(f64::INFINITY);
+            Desk::new(&ledger, &from.plan, &from.shapes)?.solved()
+        };
+        let refined = Refined {
+            plan: from.plan.clone(),
+            solved,
+            evaluations: 0,
+        };
+        Some(self.shelve(refined, work))
     }
 
     /// Refines a plan's sizes on paper.

@@ -1,5 +1,6 @@
 //! What an exploration ends in.
 
+use super::advice::Explanation;
 use crate::circuit::netlist::{Netlist, Node};
 pub use crate::network::work::Work;
 use crate::spec::{Rail, Spec};
@@ -24,7 +25,7 @@ pub struct Outcome {
 }
 
 /// How an exploration ended.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq)]
 pub enum Status {
     /// A front was found; every network on it meets the spec at every corner.
     Found,
@@ -34,6 +35,8 @@ pub enum Status {
     NothingFits {
         /// Limits the nearest network breaks, worst first.
         broken: Vec<Broken>,
+        /// What is impossible at any size, and what would make the spec feasible.
+        why: Explanation,
     },
 }
 
@@ -56,7 +59,7 @@ pub struct Broken {
 }
 
 /// One network, with all that a page, a table or a deck shows of it.
-#[derive(Debug, Clone)]
+#[derive(Debug, Clone, PartialEq)]
 pub struct NetworkReport {
     /// 1 is the least area.
     pub rank: usize,

@@ -4,9 +4,10 @@
 //! in SI base units (m, m2, A, V, Ohm, W, K) and fractions for errors. Every key is always there;
 //! what does not apply is `null`.
 
-use super::{Files, Format, words};
+use super::{Files, Format, view, words};
 use crate::explore::{
-    Broken, DeviceRow, FamilyReport, FigureValue, NetworkReport, Outcome, OutputReport, Status,
+    Advice, Broken, Change, DeviceRow, Explanation, FamilyReport, FigureValue, NetworkReport,
+    Outcome, OutputReport, Status,
 };
 use crate::spec::{AccuracyOf, Effort, Flow, Output, Reference, Spec, Target};
 use crate::units;
@@ -117,6 +118,8 @@ struct Document {
     sentence: String,
     /// Limits that the nearest network breaks, worst first; empty unless nothing fits.
     broken: Vec<BrokenLimit>,
+    /// Why nothing fits and what would; null unless nothing fits.
+    why: Option<Why>,
     /// Title of the process card.
     card_title: String,
     /// The spec as understood.
@@ -159,6 +162,60 @@ struct BrokenLimit {
     unit: String,
     /// Corner at which it is worst.
     corner: Option<String>,
+}
+
+/// Why nothing fits, and what would.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Why {
+    /// What no network of any size can do, whatever its budgets; empty where every output can be
+    /// served alone and the limits collide with each other.
+    impossible: Vec<Demand>,
+    /// Relaxations that a network was verified for at every corner, each the least found: of one
+    /// limit each, or, where none suffices, one of several together.
+    advice: Vec<Relaxation>,
+    /// False where the run was stopped before every limit was tried.
+    complete: bool,
+}
+
+/// A demand that no network of any size meets.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Demand {
+    /// The output whose limits are out of reach; null for a limit of the whole network.
+    output: Option<String>,
+    /// The nearest possible values, each with all other limits kept.
+    nearest: Vec<ChangedLimit>,
+}
+
+/// Changes that make the spec feasible.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Relaxation {
+    /// The limits that give.
+    changes: Vec<ChangedLimit>,
+    /// Area of the network that shows it, m2.
+    area: Number,
+    /// Its overhead current, A.
+    overhead_current: Number,
+}
+
+/// One limit with another value.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct ChangedLimit {
+    /// Key of the spec.
+    key: String,
+    /// Which end of a range, "low" or "high"; null for other keys.
+    end: Option<String>,
+    /// Output it belongs to; null for budgets and the reference.
+    output: Option<String>,
+    /// Value in the spec.
+    from: Number,
+    /// Value that it would need.
+    to: Number,
+    /// SI unit of both, "1" for a fraction.
+    unit: String,
 }
 
 /// A closed interval.
@@ -560,6 +617,7 @@ impl Document {
                 .iter()
                 .map(BrokenLimit::from)
                 .collect(),
+            why: words::why(outcome).map(Why::from),
             card_title: outcome.card_title.clone(),
             spec: SpecAsUnderstood::from(&outcome.spec),
             front: outcome.front.iter().map(Network::from).collect(),
@@ -598,6 +656,48 @@ impl From<&Broken> for BrokenLimit {
             value: Number(broken.value),
             unit: broken.unit.clone(),
             corner: broken.corner.clone(),
+        }
+    }
+}
+
+impl From<&Explanation> for Why {
+    fn from(why: &Explanation) -> Why {
+        let changes = |list: &[Change]| list.iter().map(ChangedLimit::from).collect();
+        let figure = |advice: &Advice, name: &str| {
+            optional(view::figure(&advice.network, name).map(|f| f.value))
+        };
+        Why {
+            impossible: why
+                .impossible
+                .iter()
+                .map(|demand| Demand {
+                    output: demand.output.clone(),
+                    nearest: changes(&demand.nearest),
+                })
+                .collect(),
+            advice: why
+                .advice
+                .iter()
+                .map(|advice| Relaxation {
+                    changes: changes(&advice.changes),
+                    area: figure(advice, "area"),
+                    overhead_current: figure(advice, "overhead_current"),
+                })
+                .collect(),
+            complete: why.complete,
+        }
+    }
+}
+
+impl From<&Change> for ChangedLimit {
+    fn from(change: &Change) -> ChangedLimit {
+        ChangedLimit {
+            key: change.key.clone(),
+            end: change.end.clone(),
+            output: change.output.clone(),
+            from: Number(change.from),
+            to: Number(change.to),
+            unit: change.unit.clone(),
         }
     }
 }

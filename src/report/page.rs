@@ -735,6 +735,7 @@ fn page(outcome: &Outcome) -> Markup {
                     h1 { (title) }
                     p.status.bad[!fits] { (words::status(outcome)) }
                     nav aria-label="Sections" {
+                        @if words::why(outcome).is_some() { a href="#advice" { "Advice" } }
                         @if first.is_some() {
                             a href="#front" { @if outcome.front.is_empty() { "Nearest" } @else { "Front" } }
                             a href="#network" { "Network" }
@@ -753,6 +754,27 @@ fn page(outcome: &Outcome) -> Markup {
                             ol.broken {
                                 @for broken in words::broken(outcome) {
                                     li { (print(words::broken_sentence(broken))) }
+                                }
+                            }
+                        }
+                    }
+                    @if let Some(why) = words::why(outcome) {
+                        section #advice {
+                            h2 { "What would fit" }
+                            p { (words::cause(why)) }
+                            @if !why.impossible.is_empty() {
+                                ul.broken {
+                                    @for impossible in &why.impossible {
+                                        li { (print(words::impossible(impossible))) }
+                                    }
+                                }
+                            }
+                            p { (words::advice_title(why)) }
+                            @if !why.advice.is_empty() {
+                                ul {
+                                    @for advice in &why.advice {
+                                        li { (print(words::advice(advice))) }
+                                    }
                                 }
                             }
                         }

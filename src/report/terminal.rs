@@ -10,7 +10,8 @@ const NARROWEST: usize = 40;
 /// The ranked networks and how the exploration ended, at most `width` columns wide.
 ///
 /// Where a network's line is too long for the terminal, the error's corner and the cells stand on
-/// lines below it. When nothing fits, the nearest network's line is followed by one sentence per broken limit.
+/// lines below it. When nothing fits, the nearest network's line is followed by one
+/// sentence per broken limit, by what is impossible, and by what would fit.
 pub fn summary(outcome: &Outcome, width: usize) -> String {
     let width = width.max(NARROWEST);
     let mut text = String::new();
@@ -42,6 +43,21 @@ pub fn summary(outcome: &Outcome, width: usize) -> String {
                 &format!("- {}", words::broken_sentence(broken)),
                 2,
             );
+        }
+    }
+    if let Some(why) = words::why(outcome) {
+        text.push('\n');
+        paragraph(&mut text, words::cause(why), 0);
+        for impossible in &why.impossible {
+            paragraph(
+                &mut text,
+                &format!("- {}", words::impossible(impossible)),
+                2,
+            );
+        }
+        paragraph(&mut text, words::advice_title(why), 0);
+        for advice in &why.advice {
+            paragraph(&mut text, &format!("- {}", words::advice(advice)), 2);
         }
     }
     let failures: u64 = outcome

@@ -1,8 +1,11 @@
 //! The words of a report, in one place: labels, sentences and cautions that several formats share.
 
-use super::format;
-use crate::explore::{Broken, NetworkReport, Outcome, Status};
+use super::{format, view};
+use crate::explore::{
+    Advice, Broken, Change, Explanation, Impossible, NetworkReport, Outcome, Status,
+};
 use crate::spec::{AccuracyOf, Flow, Output, Rail, Reference, Target};
+use crate::units;
 
 /// Cautions that every report carries.
 pub const CAUTIONS: [&str; 3] = [
@@ -51,7 +54,7 @@ pub fn status(outcome: &Outcome) -> String {
              run may find better ones.",
             count(found, "network")
         ),
-        Status::NothingFits { broken } if outcome.nearest.is_some() => format!(
+        Status::NothingFits { broken, .. } if outcome.nearest.is_some() => format!(
             "Nothing fits: no network meets the spec. The nearest one breaks {}.",
             count(broken.len(), "limit")
         ),
@@ -65,7 +68,7 @@ pub fn status(outcome: &Outcome) -> String {
 /// Limits that the outcome reports as broken: those of `NothingFits`, or none.
 pub fn broken(outcome: &Outcome) -> &[Broken] {
     match &outcome.status {
-        Status::NothingFits { broken } => broken,
+        Status::NothingFits { broken, .. } => broken,
         _ => &[],
     }
 }
@@ -97,6 +100,118 @@ pub fn broken_sentence(broken: &Broken) -> String {
         format::quantity(broken.value, &broken.unit),
         format::quantity(broken.limit, &broken.unit),
     )
+}
+
+/// Why nothing fits and what would; `None` unless nothing does.
+pub fn why(outcome: &Outcome) -> Option<&Explanation> {
+    match &outcome.status {
+        Status::NothingFits { why, .. } => Some(why),
+        _ => None,
+    }
+}
+
+/// A limit as a spec would state it, every digit kept: "5 210 um2", "1.4 %", "28.3 uA".
+fn limit(value: f64, unit: &str) -> String {
+    match unit {
+        "m2" => format::area(value),
+        "V" => format::volts(value),
+        "1" => {
+            let text = units::percent(value, 3);
+            let number = text.trim_end_matches(" %");
+            let short = if number.contains('.') {
+                number.trim_end_matches('0').trim_end_matches('.')
+            } else {
+                number
+            };
+            format!("{short} %")
+        }
+        _ => units::exact(value, unit),
+    }
+}
+
+/// The limit that a change is of: "area", "adc_ref accuracy", "reference range, high end".
+fn limit_of(change: &Change) -> String {
+    let owner = match (&change.output, &change.end) {
+        (Some(output), _) => format!("{output} "),
+        (None, Some(_)) => "reference ".to_owned(),
+        (None, None) => String::new(),
+    };
+    let end = match &change.end {
+        Some(end) => format!(", {end} end"),
+        None => String::new(),
+    };
+    format!("{owner}{}{end}", change.key)
+}
+
+/// A change in the user's units: "area to 5 210 um2", "adc_ref accuracy to 1.4 %".
+pub fn change(change: &Change) -> String {
+    format!("{} to {}", limit_of(change), limit(change.to, &change.unit))
+}
+
+/// An advice as one sentence: what to change, from what, and what the network that shows it takes.
+pub fn advice(advice: &Advice) -> String {
+    let changes: Vec<String> = advice
+        .changes
+        .iter()
+        .map(|c| format!("{} (from {})", change(c), limit(c.from, &c.unit)))
+        .collect();
+    let figure = |name: &str| {
+        view::figure(&advice.network, name).map_or("-".to_owned(), |figure| {
+            format::quantity(figure.value, &figure.unit)
+        })
+    };
+    format!(
+        "{}: a network of {} at {} of overhead current.",
+        changes.join(" and "),
+        figure("area"),
+        figure("overhead_current"),
+    )
+}
+
+/// What is impossible at any size, as one sentence.
+pub fn impossible(impossible: &Impossible) -> String {
+    let subject = match &impossible.output {
+        Some(output) => format!("{output}: no network of any size can serve this output"),
+        None => "No network of any size can keep this limit".to_owned(),
+    };
+    let nearest: Vec<String> = impossible.nearest.iter().map(change).collect();
+    if nearest.is_empty() {
+        format!("{subject}; none of its limits alone could give enough.")
+    } else {
+        format!(
+            "{subject}; the nearest possible is {}.",
+            nearest.join(", or ")
+        )
+    }
+}
+
+/// Whether something is impossible in itself or the limits collide, as one sentence.
+pub fn cause(why: &Explanation) -> &'static str {
+    if why.impossible.is_empty() {
+        "Every output can be served alone: the limits collide with each other."
+    } else {
+        "Not a matter of budgets:"
+    }
+}
+
+/// What introduces the advice: one limit at a time, several together, or none.
+pub fn advice_title(why: &Explanation) -> &'static str {
+    let together = why.advice.iter().any(|a| a.changes.len() > 1);
+    match (why.advice.is_empty(), together) {
+        (true, _) if !why.complete => "Stopped before it was known what would fit.",
+        (true, _) => "No relaxation was found that a network could be verified for.",
+        (false, true) => {
+            "No limit alone is enough. Together these would do, the least found, verified at every \
+             corner:"
+        }
+        (false, false) if !why.complete => {
+            "Any one of these would do, the least found before the run was stopped, verified at \
+             every corner:"
+        }
+        (false, false) => {
+            "Any one of these would do, each the least found, verified at every corner:"
+        }
+    }
 }
 
 /// What an output is held to: "20.0 uA" or "2 x reference (20.0 uA)".

@@ -190,6 +190,30 @@ pub fn sweep_at(
     Pool { probes, shapes }
 }
 
+/// Some shapes of a pool, one in `step` of each rail, solved where another job probes them.
+pub fn again(job: &Job, pool: &Pool, step: usize, work: &mut Work, stop: &AtomicBool) -> Pool {
+    let climates = climates(job);
+    let current = job.spec.reference.current().0;
+    let probes = [Rail::Sink, Rail::Source].map(|rail| Probes::of(job, rail));
+    let mut shapes = [Vec::new(), Vec::new()];
+    for rail in [Rail::Sink, Rail::Source] {
+        let (r, tech) = (rail as usize, job.tech(rail));
+        let mut solvers: BTreeMap<usize, Solver> = BTreeMap::new();
+        for known in pool.shapes[r].iter().step_by(step.max(1)) {
+            if stop.load(Ordering::Relaxed) {
+                break;
+            }
+            let solver = solvers.entry(known.shape.cell).or_insert_with_key(|&cell| {
+                Solver::new(tech, cell, current, &probes[r].volts, &climates)
+            });
+            // What does not converge here did where it was first solved, and is counted there.
+            shapes[r].extend(solver.solve(&known.shape));
+        }
+        work.dc_solutions += solvers.values().map(|s| s.solutions).sum::<u64>();
+    }
+    Pool { probes, shapes }
+}
+
 /// Whether the card allows a cell at all.
 fn usable(job: &Job, cell: &dyn Cell) -> bool {
     job.card.resistor.is_some() || !cell.parts().resistor

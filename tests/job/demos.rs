@@ -42,7 +42,7 @@ fn all_but_the_impossible_are_found() {
     for (task, outcome) in explored() {
         let name = &task.spec.name;
         if name == "impossible" {
-            let Status::NothingFits { broken } = &outcome.status else {
+            let Status::NothingFits { broken, .. } = &outcome.status else {
                 panic!("{name}: {:?}", outcome.status);
             };
             // It is said which limits collide: here nothing but accuracy and area can.

@@ -1,5 +1,6 @@
 //! The main job: from a spec to a front of verified networks, held against outside values.
 
+mod advice;
 mod assembly;
 mod build;
 mod catalogue;

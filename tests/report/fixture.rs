@@ -631,9 +631,40 @@ pub fn nothing_fits() -> Outcome {
         },
     ];
     nearest.broken = broken.clone();
+    let change =
+        |key: &str, end: Option<&str>, output: Option<&str>, limits: [f64; 2], unit: &str| Change {
+            key: key.to_owned(),
+            end: end.map(str::to_owned),
+            output: output.map(str::to_owned),
+            from: limits[0],
+            to: limits[1],
+            unit: unit.to_owned(),
+        };
+    let resistance = change(
+        "output_resistance",
+        None,
+        Some("oscillator"),
+        [250e6, 182e6],
+        "Ohm",
+    );
+    let low = change("range", Some("low"), Some("oscillator"), [0.3, 0.412], "V");
+    let error = change("accuracy", None, Some("preamp"), [0.004, 0.0124], "1");
+    let area = change("area", None, None, [2e-9, 5.21e-9], "m2");
+    let proof = Box::new(outcome.front[0].clone());
+    let why = Explanation {
+        impossible: vec![Impossible {
+            output: Some("oscillator".to_owned()),
+            nearest: vec![resistance.clone(), low],
+        }],
+        advice: vec![Advice {
+            changes: vec![area, error, resistance],
+            network: proof,
+        }],
+        complete: true,
+    };
     outcome.front.clear();
     outcome.nearest = Some(Box::new(nearest));
-    outcome.status = Status::NothingFits { broken };
+    outcome.status = Status::NothingFits { broken, why };
     outcome
 }
 
