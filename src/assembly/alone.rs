@@ -213,7 +213,9 @@ impl Search<'_> {
                 let solver = Solver::new(tech, start.cell, current, &case.volts, &self.climates);
                 last = Some((start.cell, solver));
             }
-            let Some((_, solver)) = &mut last else { continue };
+            let Some((_, solver)) = &mut last else {
+                continue;
+            };
             let found = self.descend(case, aim, solver, start);
             if found.0 < best.0 {
                 best = found;
@@ -376,9 +378,12 @@ pub fn lowest_pin(job: &Job, pool: &Pool) -> (Option<f64>, u64) {
     let probe = [pool.probes[rail as usize].volts[0]];
     let climates = corners::climates(job);
     let mut solver = Solver::new(tech, start.shape.cell, current, &probe, &climates);
-    let (lowest, _) = compass(&tech, &start.shape, |_| false, |shape| {
-        solver.solve(shape).map_or(f64::INFINITY, |s| volts(&s))
-    });
+    let (lowest, _) = compass(
+        &tech,
+        &start.shape,
+        |_| false,
+        |shape| solver.solve(shape).map_or(f64::INFINITY, |s| volts(&s)),
+    );
     (lowest.is_finite().then_some(lowest), solver.solutions)
 }
 

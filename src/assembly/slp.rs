@@ -22,8 +22,6 @@ const ROUNDS: usize = 24;
 /// Charge for exceeding a limit by a factor e, in units of ln(area). An exact penalty must exceed
 /// every multiplier; area falls at most with the square of an error, so they add up to about 2.
 const CHARGE: f64 = 5.0;
-/// Limits further inside than this cannot matter within a step.
-const FAR: f64 = -0.7;
 
 /// A point of the descent.
 struct Point {
@@ -104,12 +102,12 @@ pub(super) fn descend(desk: &mut Desk, radius: f64) {
                 _ => radius *= 0.4,
             }
         }
-        desk.snap = true;
+        desk.snap = desk.on_grid;
         if place(desk, &here.shapes) {
             return;
         }
     }
-    desk.snap = true;
+    desk.snap = desk.on_grid;
     place(desk, &start);
 }
 
@@ -223,7 +221,15 @@ fn propose(
                 .collect()
         })
         .collect();
-    let near: Vec<usize> = (0..limits.len()).filter(|&j| limits[j] > FAR).collect();
+    // A limit that no step within the trust region reaches is no row: most are of that kind, and
+    // solving for all of them took most of the time.
+    let reach = |j: usize| {
+        let slopes = slopes.limits.iter().flatten();
+        radius * slopes.map(|slope| slope[j].abs()).sum::<f64>()
+    };
+    let near: Vec<usize> = (0..limits.len())
+        .filter(|&j| limits[j] > -reach(j))
+        .collect();
     let over: Vec<Variable> = near.iter().map(|_| vars.add(variable().min(0.0))).collect();
     let mut objective = Expression::default();
     for (f, list) in steps.iter().enumerate() {

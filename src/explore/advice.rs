@@ -269,9 +269,9 @@ impl<'a> Advisor<'a> {
                 (Limit::OverheadCurrent, reference),
                 (Limit::Power, reference * spec.supply.most.0),
             ];
-            let short = least.into_iter().filter(|&(limit, value)| {
-                limit.value(spec).is_some_and(|asked| asked < value)
-            });
+            let short = least
+                .into_iter()
+                .filter(|&(limit, value)| limit.value(spec).is_some_and(|asked| asked < value));
             for one in short {
                 note(None, vec![one]);
             }
@@ -396,9 +396,9 @@ impl<'a> Advisor<'a> {
         work: &mut Work,
     ) -> Option<Fit> {
         let job = self.job_of(spec);
-        let probed = [Rail::Sink, Rail::Source]
-            .iter()
-            .all(|&rail| crate::network::probes::Probes::of(&job, rail) == self.pool.probes[rail as usize]);
+        let probed = [Rail::Sink, Rail::Source].iter().all(|&rail| {
+            crate::network::probes::Probes::of(&job, rail) == self.pool.probes[rail as usize]
+        });
         let swept;
         let pool = if probed {
             self.pool
@@ -641,7 +641,12 @@ impl<'a> Advisor<'a> {
         }
         let (_, polished) = best?;
         // What it takes at its worst corner, rather than what it was allowed.
-        let amps = polished.measured.overhead.iter().copied().fold(0.0, f64::max);
+        let amps = polished
+            .measured
+            .overhead
+            .iter()
+            .copied()
+            .fold(0.0, f64::max);
         let value = limit.outward(amps * volts);
         self.verified(&[(limit, value)], &polished, work)
     }
@@ -679,8 +684,7 @@ impl<'a> Advisor<'a> {
             let budget = spec.overhead_limit() * NOMINAL;
             let found = self.searched(&spec, seeds, true, budget, work)?;
             let limits = Limits::of(self.job_of(&spec));
-            let (polished, evaluations, solutions) =
-                limits.drawn(&found.sized, POLISH, self.seed);
+            let (polished, evaluations, solutions) = limits.drawn(&found.sized, POLISH, self.seed);
             work.polish_evaluations += evaluations;
             work.dc_solutions += solutions;
             near.extend(polished);
@@ -718,7 +722,9 @@ impl<'a> Advisor<'a> {
                     .map(|network| (None, network)),
                 _ => self.taken_back(&spec, limit, value, &from, work),
             };
-            let Some((value, better)) = taken else { continue };
+            let Some((value, better)) = taken else {
+                continue;
+            };
             let mut next = changes.clone();
             match value {
                 Some(value) => next[i].1 = value,
@@ -798,9 +804,7 @@ impl<'a> Advisor<'a> {
         let places = [limit.place(start), limit.place(value)];
         let (place, fit) = self.close(spec, limit, places, fit, work);
         let (less, network) = self.settle(spec, limit, place, &fit.sized, work)?;
-        limit
-            .looser(value, less)
-            .then_some((Some(less), network))
+        limit.looser(value, less).then_some((Some(less), network))
     }
 }
 
@@ -808,9 +812,9 @@ impl<'a> Advisor<'a> {
 const LEVELS: usize = 5;
 
 fn relaxed(spec: &Spec, changes: &[(Limit, f64)]) -> Spec {
-    changes
-        .iter()
-        .fold(spec.clone(), |spec, &(limit, value)| limit.set(&spec, value))
+    changes.iter().fold(spec.clone(), |spec, &(limit, value)| {
+        limit.set(&spec, value)
+    })
 }
 
 /// Overhead current of a plan, A.

@@ -74,13 +74,17 @@ fn keeps(task: &Task, advice: &Advice) -> Result<(), String> {
         }
     }
     let limits = &spec.limits;
-    limits.area.map_or(Ok(()), |l| within("area", found.area, l.0))?;
+    limits
+        .area
+        .map_or(Ok(()), |l| within("area", found.area, l.0))?;
     let overhead = found.overhead;
     limits
         .overhead_current
         .map_or(Ok(()), |l| within("overhead", overhead, l.0))?;
     let power = overhead * spec.supply.most.0;
-    limits.power.map_or(Ok(()), |l| within("power", power, l.0))?;
+    limits
+        .power
+        .map_or(Ok(()), |l| within("power", power, l.0))?;
     if let Reference::Current { range, .. } = spec.reference {
         within("pin", found.pin[1], range.most.0)?;
         within("pin", range.least.0, found.pin[0])?;
@@ -257,10 +261,21 @@ fn accuracy_beyond_the_largest_device() {
 #[test]
 fn accuracy_beyond_the_reference_itself() {
     let reference = "current: 10 uA, flows: into network, range: 0 V to 1.2 V, tolerance: 4 %";
-    let failed = failed("tolerance", &spec(reference, SINK, "ratio: 1/2, range: 0.3 V to 1.3 V, accuracy: 3 %", LIMITS));
+    let failed = failed(
+        "tolerance",
+        &spec(
+            reference,
+            SINK,
+            "ratio: 1/2, range: 0.3 V to 1.3 V, accuracy: 3 %",
+            LIMITS,
+        ),
+    );
     failed.check(&[Some("low")], &["low accuracy"]);
     let nearest = &failed.why.impossible[0].nearest;
-    assert!(nearest.iter().all(|c| c.key == "accuracy" && c.to > 0.04), "{nearest:?}");
+    assert!(
+        nearest.iter().all(|c| c.key == "accuracy" && c.to > 0.04),
+        "{nearest:?}"
+    );
 }
 
 #[test]
@@ -285,7 +300,10 @@ fn two_outputs_out_of_reach() {
     let sink = "current: 20 uA, range: 0.04 V to 1.3 V, accuracy: 3 %";
     let source = "current: 5 uA, range: 0.04 V to 1.3 V, accuracy: 3 %";
     let failed = failed("both", &spec(REFERENCE, sink, source, LIMITS));
-    failed.check(&[Some("low"), Some("high")], &["low range low", "high range low"]);
+    failed.check(
+        &[Some("low"), Some("high")],
+        &["low range low", "high range low"],
+    );
     assert_eq!(failed.why.advice.len(), 1);
 }
 
@@ -301,7 +319,12 @@ fn an_own_reference_that_spreads_too_far() {
 /// The same spec, the same explanation, on any number of threads.
 #[test]
 fn the_same_advice_on_any_number_of_threads() {
-    let text = spec(REFERENCE, SINK, SOURCE, "area: 480 um2, overhead_current: 40 uA");
+    let text = spec(
+        REFERENCE,
+        SINK,
+        SOURCE,
+        "area: 480 um2, overhead_current: 40 uA",
+    );
     let on = |threads: usize| {
         let pool = rayon::ThreadPoolBuilder::new().num_threads(threads);
         let task = Task::read("threads", &text);

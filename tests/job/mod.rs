@@ -9,6 +9,7 @@ mod determinism;
 mod front;
 mod outside;
 mod paper;
+mod prices;
 mod remeasure;
 mod robustness;
 mod screening;
