@@ -152,7 +152,9 @@ const REST: Pace = Pace {
     shrink: 1.0,
 };
 /// How often, at most.
-const RESTS: usize = 6;
+const RESTS: usize = 10;
+/// Until one more gains less than this share of area.
+const RESTED: f64 = 5e-5;
 /// A step is solved from there by this.
 const STEP: Pace = Pace {
     radius: 0.03,
@@ -199,7 +201,7 @@ pub(super) fn prices(
         if gain > 0.0 {
             rest = next;
         }
-        if gain < DIGITS * rest.area || stop.load(Ordering::Relaxed) {
+        if gain < RESTED * rest.area || stop.load(Ordering::Relaxed) {
             break;
         }
     }
@@ -231,13 +233,10 @@ pub(super) fn prices(
     work.polish_evaluations += effort.evaluations;
     work.dc_solutions += effort.solutions;
     let limits: Vec<LimitPrice> = priced.into_iter().map(|p| p.0).collect();
-    // A tighter limit cannot make a smaller network: what seems so is noise, and so is what the
-    // unchanged limits gained by being solved once more.
-    let gains = limits.iter().map(|l| match l.tighter.verdict {
-        Verdict::Resized { area, .. } => -area,
-        _ => 0.0,
-    });
-    let noise = gains.fold((rest.area - base.area).abs(), f64::max);
+    let noise = limits
+        .iter()
+        .map(doubt)
+        .fold((rest.area - base.area).abs(), f64::max);
     let exchange = |i: usize| Exchange {
         rank: front[i].rank,
         area: drawn[i].measured.area - network.measured.area,
@@ -254,6 +253,20 @@ pub(super) fn prices(
         limits,
         exchanges: neighbours.into_iter().flatten().map(exchange).collect(),
     })
+}
+
+/// By how much the prices of a limit contradict each other, m^2. A tighter limit cannot make a
+/// smaller network, and area is convex in a limit near its optimum: a step tighter costs at least
+/// what the same step looser saves. What is against that was left in the unchanged network.
+fn doubt(price: &LimitPrice) -> f64 {
+    let Verdict::Resized { area: more, .. } = price.tighter.verdict else {
+        return 0.0;
+    };
+    let less = price.looser.map_or(more, |step| match step.verdict {
+        Verdict::Resized { area, .. } => area,
+        _ => more,
+    });
+    (-more).max(-(more + less) / 2.0).max(0.0)
 }
 
 /// The value of a limit a step tighter (`1.0`) or looser (`-1.0`): voltages by a step of their own,
