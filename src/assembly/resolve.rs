@@ -127,7 +127,7 @@ fn solved(
             inside -= 1.0 - INSIDE;
         }
         correct(desk, &measured, 1.0, inside);
-        slp::descend(desk, radius);
+        slp::settle(desk, radius);
         radius *= pace.shrink;
     }
     let (shapes, exact) = best?;
