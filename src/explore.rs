@@ -4,6 +4,7 @@ mod advice;
 mod describe;
 mod limit;
 mod outcome;
+mod prices;
 
 pub use advice::{Advice, Change, Explanation, Impossible};
 pub use limit::Limit;
@@ -86,7 +87,7 @@ pub fn explore(job: &Job, observer: &dyn Observer, stop: &AtomicBool) -> Outcome
             job, &pool, tighten, &effort, observer, stop, &mut work,
         ));
     }
-    let mut outcome = finish(job, &drawn, work, stop);
+    let mut outcome = finish(job, &drawn, work, observer, stop);
     if let Status::NothingFits { why, .. } = &mut outcome.status {
         let work = &mut outcome.work;
         *why = advice::explain(job, &pool, &drawn, observer, stop, work);
@@ -314,7 +315,13 @@ fn count(work: &mut Work, proved: Option<bool>) {
 }
 
 /// The front of what was drawn, or the network that comes closest.
-fn finish(job: &Job, drawn: &[Polished], mut work: Work, stop: &AtomicBool) -> Outcome {
+fn finish(
+    job: &Job,
+    drawn: &[Polished],
+    mut work: Work,
+    observer: &dyn Observer,
+    stop: &AtomicBool,
+) -> Outcome {
     let corners = corners::verified(job);
     let mut bench = Bench::new(*job, corners.clone());
     let mut fine = Bench::new(*job, corners::with_nominal_supply(job));
@@ -324,13 +331,13 @@ fn finish(job: &Job, drawn: &[Polished], mut work: Work, stop: &AtomicBool) -> O
         measure::headroom(job, &mut bench, &mut measured).ok()?;
         describe::describe(job, &mut fine, &p.network, &measured, &corners).ok()
     };
-    let mut fits = Vec::new();
+    let mut fits: Vec<(NetworkReport, &Polished)> = Vec::new();
     let mut nearest: Option<NetworkReport> = None;
     let breach = |r: &NetworkReport| r.broken.iter().map(breach_of).sum::<f64>();
     for p in drawn {
         let Some(described) = report(p) else { continue };
         if described.broken.is_empty() {
-            fits.push(described);
+            fits.push((described, p));
         } else if nearest
             .as_ref()
             .is_none_or(|n| breach(&described) < breach(n))
@@ -345,33 +352,34 @@ fn finish(job: &Job, drawn: &[Polished], mut work: Work, stop: &AtomicBool) -> O
         .iter()
         .filter_map(|name| figures::named(name))
         .collect();
-    let points: Vec<Vec<f64>> = fits
-        .iter()
-        .map(|r| {
-            trade
-                .iter()
-                .map(|f| {
-                    let value = r
-                        .figures
-                        .iter()
-                        .find(|v| v.name == f.name())
-                        .map_or(0.0, |v| v.value);
-                    match f.better() {
-                        figures::Better::Less => value,
-                        figures::Better::More => -value,
-                    }
-                })
-                .collect()
-        })
-        .collect();
-    let mut front: Vec<NetworkReport> = front::distinct(&points, NEARLY_SAME)
-        .into_iter()
-        .map(|i| fits[i].clone())
-        .collect();
-    front.sort_by(|a, b| area_of(a).total_cmp(&area_of(b)));
+    let point = |r: &NetworkReport| -> Vec<f64> {
+        trade
+            .iter()
+            .map(|f| {
+                let value = r
+                    .figures
+                    .iter()
+                    .find(|v| v.name == f.name())
+                    .map_or(0.0, |v| v.value);
+                match f.better() {
+                    figures::Better::Less => value,
+                    figures::Better::More => -value,
+                }
+            })
+            .collect()
+    };
+    let points: Vec<Vec<f64>> = fits.iter().map(|(r, _)| point(r)).collect();
+    let mut kept = front::distinct(&points, NEARLY_SAME);
+    kept.sort_by(|&a, &b| area_of(&fits[a].0).total_cmp(&area_of(&fits[b].0)));
+    let mut front: Vec<NetworkReport> = kept.iter().map(|&i| fits[i].0.clone()).collect();
+    let built: Vec<&Polished> = kept.iter().map(|&i| fits[i].1).collect();
     for (i, network) in front.iter_mut().enumerate() {
         network.rank = i + 1;
     }
+    let points: Vec<Vec<f64>> = front.iter().map(point).collect();
+    let prices = choose(job, &points)
+        .filter(|_| !stop.load(Ordering::Relaxed))
+        .and_then(|chosen| prices::prices(job, &front, &built, chosen, observer, stop, &mut work));
     let stopped = stop.load(Ordering::Relaxed);
     let status = if stopped {
         // Whether anything fits is then not known.
@@ -399,8 +407,21 @@ fn finish(job: &Job, drawn: &[Polished], mut work: Work, stop: &AtomicBool) -> O
         status,
         front,
         nearest,
+        prices,
         work,
     }
+}
+
+/// Which network of a front (by its traded figures, less being better) is priced, and why.
+fn choose(job: &Job, points: &[Vec<f64>]) -> Option<(usize, Chosen)> {
+    let knee = front::knee::knee(points)?;
+    Some(match job.spec.search.price_of {
+        None => (knee, Chosen::Knee),
+        Some(rank) if (1..=points.len()).contains(&(rank as usize)) => {
+            (rank as usize - 1, Chosen::Asked)
+        }
+        Some(asked) => (knee, Chosen::Beyond { asked }),
+    })
 }
 
 fn area_of(report: &NetworkReport) -> f64 {

@@ -7,14 +7,29 @@ use crate::spec::Reference;
 
 /// Draws a plan whose member `k` has shape `shapes[k]`. `None` where a shape cannot be sized.
 pub fn build(job: &Job, plan: &Plan, shapes: &[Shape]) -> Option<Network> {
+    sized(job, plan, shapes, true)
+}
+
+/// The same with every size as it is, off the manufacturing grid: no drawing, but what two
+/// networks differ by is then not what rounding made of it.
+pub fn build_exact(job: &Job, plan: &Plan, shapes: &[Shape]) -> Option<Network> {
+    sized(job, plan, shapes, false)
+}
+
+fn sized(job: &Job, plan: &Plan, shapes: &[Shape], on_grid: bool) -> Option<Network> {
     let mut families: Vec<Family> = Vec::with_capacity(plan.members.len());
     for (member, shape) in plan.members.iter().zip(shapes) {
         let tech = job.tech(member.rail);
-        let shape = shape.snapped(&tech);
+        let shape = if on_grid {
+            shape.snapped(&tech)
+        } else {
+            *shape
+        };
         let unit_current = member.current / f64::from(member.units);
-        let unit = CELLS[shape.cell]
-            .unit(&tech, &shape, unit_current)?
-            .snapped(&tech);
+        let mut unit = CELLS[shape.cell].unit(&tech, &shape, unit_current)?;
+        if on_grid {
+            unit = unit.snapped(&tech);
+        }
         let source = |parent: Option<usize>, current: f64| match parent {
             None => Source::Reference,
             Some(parent) => {
@@ -27,7 +42,10 @@ pub fn build(job: &Job, plan: &Plan, shapes: &[Shape]) -> Option<Network> {
             }
         };
         let bias = member.bias.and_then(|(current, parent)| {
-            let size = unit.bias_size(&tech, current)?.snapped(&tech);
+            let mut size = unit.bias_size(&tech, current)?;
+            if on_grid {
+                size = size.snapped(&tech);
+            }
             Some(BiasLeg {
                 feed: source(parent, current),
                 current,

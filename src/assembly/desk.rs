@@ -28,6 +28,8 @@ pub(super) struct Desk<'l, 'a> {
     pub(super) charge: f64,
     /// Shapes are solved with their lengths on the manufacturing grid.
     pub(super) snap: bool,
+    /// Descents end on the manufacturing grid; off it, differences of areas are smooth.
+    pub(super) on_grid: bool,
     pub(super) evaluations: u64,
 }
 
@@ -52,6 +54,7 @@ impl<'l, 'a> Desk<'l, 'a> {
             budget: ledger.budget,
             charge: 0.0,
             snap: true,
+            on_grid: true,
             evaluations: 0,
         };
         for (f, shape) in shapes.iter().enumerate() {

@@ -13,5 +13,6 @@ pub mod milp;
 pub mod plan;
 pub mod polish;
 pub mod resize;
+pub mod resolve;
 mod slp;
 pub mod workshop;

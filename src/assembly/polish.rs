@@ -52,6 +52,8 @@ pub struct Polished {
     pub measured: Measured,
     /// How far its limits are exceeded, as [`excess`] says; 0 meets the spec.
     pub excess: f64,
+    /// Scale of the accuracy limits it was held to.
+    pub tighten: f64,
 }
 
 /// The sizes of one family.
@@ -251,7 +253,7 @@ pub fn polish<'a>(
         }
         if round > 0 || effort.iterations > 0 {
             let radius = if round < effort.rounds { 0.06 } else { 0.03 };
-            slp::descend(&mut desk.borrow_mut(), radius);
+            slp::settle(&mut desk.borrow_mut(), radius);
             // The swarm and the simplex finish what straight lines leave: kinks where the worst
             // corner changes.
             if round + 2 == effort.rounds && effort.swarm.0 > 0 {
@@ -278,6 +280,7 @@ pub fn polish<'a>(
             network,
             measured,
             excess: over,
+            tighten,
         };
         correct(&mut desk.borrow_mut(), &candidate.measured, tighten, inside);
         let better = best.as_ref().is_none_or(|b| {
@@ -300,7 +303,7 @@ pub fn polish<'a>(
 }
 
 /// Moves the limits on paper so that paper and whole circuit agree where they stand.
-fn correct(desk: &mut Desk, measured: &Measured, tighten: f64, inside: f64) {
+pub(super) fn correct(desk: &mut Desk, measured: &Measured, tighten: f64, inside: f64) {
     let shares = desk.shares();
     for (k, worst) in measured.worst.iter().enumerate() {
         let output = &desk.ledger.job.spec.outputs[k];

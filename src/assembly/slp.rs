@@ -18,13 +18,18 @@ use std::collections::BTreeMap;
 const STEP: f64 = 0.01;
 /// Trust region at which the descent ends.
 const FINE: f64 = 0.004;
+/// Bound of a variable at which it stands still.
+const STILL: f64 = 2e-4;
+/// A gain in ln(area) that settling counts as none.
+const SETTLED: f64 = 1e-5;
 /// Linearisations at most.
 const ROUNDS: usize = 24;
 /// Charge for exceeding a limit by a factor e, in units of ln(area). An exact penalty must exceed
 /// every multiplier; area falls at most with the square of an error, so they add up to about 2.
 const CHARGE: f64 = 5.0;
-/// Limits further inside than this cannot matter within a step.
-const FAR: f64 = -0.7;
+
+/// A change of every variable of every family.
+type Step = Vec<Vec<f64>>;
 
 /// A point of the descent.
 struct Point {
@@ -69,27 +74,10 @@ pub(super) fn descend(desk: &mut Desk, radius: f64) {
                 break;
             }
             let at = slopes.get_or_insert_with(|| differentiate(desk, &here));
-            let values: Vec<f64> = here.limits.iter().map(|l| l.1).collect();
-            let Some(step) = propose(desk, &here, at, &values, radius) else {
+            let most = alike(&here.shapes, radius);
+            let Some((_, next)) = stepped(desk, &here, at, &most) else {
                 break;
             };
-            let mut next = Point::at(desk, moved(&here.shapes, &step));
-            // The limits bend: shift them by what the linear model missed and aim again (second-
-            // order correction, Fletcher 1987).
-            if let Some(missed) = &next {
-                let aim: Vec<f64> = missed
-                    .limits
-                    .iter()
-                    .enumerate()
-                    .map(|(j, l)| l.1 - at.limit(j, &step))
-                    .collect();
-                if let Some(again) = propose(desk, &here, at, &aim, radius)
-                    && let Some(second) = Point::at(desk, moved(&here.shapes, &again))
-                    && second.merit < missed.merit
-                {
-                    next = Some(second);
-                }
-            }
             match next {
                 Some(next) if next.merit < here.merit - 1e-6 => {
                     let gain = here.merit - next.merit;
@@ -105,13 +93,112 @@ pub(super) fn descend(desk: &mut Desk, radius: f64) {
                 _ => radius *= 0.4,
             }
         }
-        desk.snap = true;
+        desk.snap = desk.on_grid;
         if place(desk, &here.shapes) {
             return;
         }
     }
-    desk.snap = true;
+    desk.snap = desk.on_grid;
     place(desk, &start);
+}
+
+/// Settles at the least area from the desk's present shapes, a first step being at most `radius`.
+///
+/// A descent within one trust region ends where the bent directions make it small, however far the
+/// straight ones would still go. Here every variable has a bound of its own, wider after two steps
+/// the same way and narrower after a turn: moving limits, as in Svanberg, Int. J. Numerical Methods
+/// in Engineering 24, 1987.
+pub(super) fn settle(desk: &mut Desk, radius: f64) {
+    let start = desk.shapes();
+    desk.snap = false;
+    let Some(mut here) = Point::at(desk, start.clone()) else {
+        desk.snap = desk.on_grid;
+        place(desk, &start);
+        return;
+    };
+    let mut most = alike(&here.shapes, radius);
+    let mut last: Option<Step> = None;
+    let mut slopes: Option<Slopes> = None;
+    let mut small = 0;
+    for _ in 0..ROUNDS {
+        if most.iter().flatten().all(|&m| m < STILL) {
+            break;
+        }
+        let at = slopes.get_or_insert_with(|| differentiate(desk, &here));
+        let Some((step, next)) = stepped(desk, &here, at, &most) else {
+            break;
+        };
+        match next {
+            Some(next) if next.merit < here.merit => {
+                small = if here.merit - next.merit < SETTLED {
+                    small + 1
+                } else {
+                    0
+                };
+                here = next;
+                slopes = None;
+                if small > 1 {
+                    break;
+                }
+                for (f, list) in most.iter_mut().enumerate() {
+                    for (i, m) in list.iter_mut().enumerate() {
+                        // A step well inside its bound is the model's own choice.
+                        if step[f][i].abs() < 0.5 * *m {
+                            continue;
+                        }
+                        let before = last.as_ref().map_or(0.0, |last| last[f][i]);
+                        if before * step[f][i] > 0.0 {
+                            *m = (*m * 1.6).min(0.3);
+                        } else if before * step[f][i] < 0.0 {
+                            *m *= 0.5;
+                        }
+                    }
+                }
+                last = Some(step);
+            }
+            _ => most.iter_mut().flatten().for_each(|m| *m *= 0.4),
+        }
+    }
+    desk.snap = desk.on_grid;
+    if !place(desk, &here.shapes) {
+        place(desk, &start);
+    }
+}
+
+/// The same bound for every variable of every shape.
+fn alike(shapes: &[Shape], radius: f64) -> Vec<Vec<f64>> {
+    let bounds = |shape: &Shape| vec![radius; variables(shape).len()];
+    shapes.iter().map(bounds).collect()
+}
+
+/// The best step of the linearised network within bounds, and where it leads; `None` without one.
+/// The step is the one taken: it was aimed again where that came out better.
+fn stepped(
+    desk: &mut Desk,
+    here: &Point,
+    at: &Slopes,
+    most: &[Vec<f64>],
+) -> Option<(Step, Option<Point>)> {
+    let values: Vec<f64> = here.limits.iter().map(|l| l.1).collect();
+    let mut step = propose(desk, here, at, &values, most)?;
+    let mut next = Point::at(desk, moved(&here.shapes, &step));
+    // The limits bend: shift them by what the linear model missed and aim again (second-order
+    // correction, Fletcher 1987).
+    if let Some(missed) = &next {
+        let aim: Vec<f64> = missed
+            .limits
+            .iter()
+            .enumerate()
+            .map(|(j, l)| l.1 - at.limit(j, &step))
+            .collect();
+        if let Some(again) = propose(desk, here, at, &aim, most)
+            && let Some(second) = Point::at(desk, moved(&here.shapes, &again))
+            && second.merit < missed.merit
+        {
+            (step, next) = (again, Some(second));
+        }
+    }
+    Some((step, next))
 }
 
 fn place(desk: &mut Desk, shapes: &[Shape]) -> bool {
@@ -188,19 +275,20 @@ fn differentiate(desk: &mut Desk, here: &Point) -> Slopes {
     slopes
 }
 
-/// How far each variable may move down and up: the trust region, lengths within the card.
-fn boxes(desk: &Desk, shapes: &[Shape], radius: f64) -> Vec<Vec<[f64; 2]>> {
+/// How far each variable may move down and up: its bound, lengths within the card.
+fn boxes(desk: &Desk, shapes: &[Shape], bounds: &[Vec<f64>]) -> Vec<Vec<[f64; 2]>> {
     let of = |f: usize, shape: &Shape| {
         let tech = desk.ledger.job.tech(desk.plan.members[f].rail);
         let length = &tech.mosfet().length;
         let (least, most) = (ln(length.least.0), ln(length.most.0));
         let limited = |(i, &x): (usize, &f64)| {
+            let bound = bounds[f][i];
             // Variables 0 and 2 are logarithms of lengths.
             if i == 0 || (i == 2 && shape.cascode_length > 0.0) {
-                let low = (-radius).max(least - x).min(0.0);
-                [low, radius.min(most - x).max(0.0)]
+                let low = (-bound).max(least - x).min(0.0);
+                [low, bound.min(most - x).max(0.0)]
             } else {
-                [-radius, radius]
+                [-bound, bound]
             }
         };
         variables(shape).iter().enumerate().map(limited).collect()
@@ -223,7 +311,7 @@ fn binding(here: &Point, slopes: &Slopes, limits: &[f64], boxes: &[Vec<[f64; 2]>
         sum
     };
     let mut reached: Vec<usize> = (0..limits.len())
-        .filter(|&j| limits[j] > FAR && limits[j] + rise(j, None) > 0.0)
+        .filter(|&j| limits[j] + rise(j, None) > 0.0)
         .collect();
     reached.sort_by(|&a, &b| {
         let by_thing = here.limits[a].0.cmp(&here.limits[b].0);
@@ -242,16 +330,16 @@ fn binding(here: &Point, slopes: &Slopes, limits: &[f64], boxes: &[Vec<[f64; 2]>
     kept
 }
 
-/// The step that is best on the linearised network within the trust region.
+/// The step that is best on the linearised network, every variable moving by at most its bound.
 fn propose(
     desk: &Desk,
     here: &Point,
     slopes: &Slopes,
     limits: &[f64],
-    radius: f64,
-) -> Option<Vec<Vec<f64>>> {
+    bounds: &[Vec<f64>],
+) -> Option<Step> {
     let mut vars = ProblemVariables::new();
-    let boxes = boxes(desk, &here.shapes, radius);
+    let boxes = boxes(desk, &here.shapes, bounds);
     let steps: Vec<Vec<Variable>> = boxes
         .iter()
         .map(|list| {

@@ -13,7 +13,7 @@ use clap::builder::{PossibleValue, TypedValueParser};
 use clap::error::ErrorKind;
 use clap::{Args, ValueEnum};
 use std::ffi::OsStr;
-use std::num::NonZeroUsize;
+use std::num::{NonZeroU32, NonZeroUsize};
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
@@ -40,6 +40,10 @@ pub struct Explore {
     /// Seed of the search; what the spec says if left out.
     #[arg(long, value_name = "NUMBER")]
     seed: Option<u64>,
+    /// Rank of the network whose limits are priced; what the spec says, or the knee of the front,
+    /// if left out.
+    #[arg(long, value_name = "RANK")]
+    price_of: Option<NonZeroU32>,
     /// Threads to work with; one per core if left out.
     #[arg(long, value_name = "NUMBER")]
     threads: Option<NonZeroUsize>,
@@ -113,6 +117,9 @@ impl Explore {
         }
         if let Some(seed) = self.seed {
             spec.search.seed = seed;
+        }
+        if let Some(rank) = self.price_of {
+            spec.search.price_of = Some(rank.get());
         }
         let folder = match self.out {
             Some(folder) => folder,

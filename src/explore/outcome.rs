@@ -1,6 +1,7 @@
 //! What an exploration ends in.
 
 use super::advice::Explanation;
+pub use super::prices::{Chosen, Exchange, LimitPrice, Prices, Step, Verdict};
 use crate::circuit::netlist::{Netlist, Node};
 pub use crate::network::work::Work;
 use crate::spec::{Rail, Spec};
@@ -20,6 +21,9 @@ pub struct Outcome {
     pub front: Vec<NetworkReport>,
     /// When nothing fits: the network that comes closest.
     pub nearest: Option<Box<NetworkReport>>,
+    /// What every limit costs, for one network of the front; `None` where there is no front, or the
+    /// run was stopped before they were known.
+    pub prices: Option<Prices>,
     /// What was done.
     pub work: Work,
 }

@@ -1,6 +1,7 @@
 //! Fronts: plain vectors and directions; no electricity.
 
 pub mod hypervolume;
+pub mod knee;
 
 /// Whether `a` is at least as good as `b` everywhere and better somewhere. All components are
 /// minimised.

@@ -1,13 +1,14 @@
-//! `front.csv`: one row per network, for spreadsheets and scripts (RFC 4180).
+//! `front.csv`: one row per network, and `prices.csv`: one row per limit, for spreadsheets and
+//! scripts (RFC 4180).
 
 use super::{Files, Format, format, view, words};
-use crate::explore::Outcome;
+use crate::explore::{Outcome, Step, Verdict};
 
 /// The format.
 pub const FORMAT: Format = Format {
     name: "csv",
-    files: &["front.csv"],
-    about: "the ranked networks with every figure, one row each",
+    files: &["front.csv", "prices.csv"],
+    about: "the ranked networks with every figure, one row each; and what every limit costs",
     render,
 };
 
@@ -75,7 +76,86 @@ fn render(outcome: &Outcome) -> Files {
         row.push(words::cells(network));
         rows.push(row);
     }
-    vec![("front.csv".into(), table(&rows).into_bytes())]
+    vec![
+        ("front.csv".into(), table(&rows).into_bytes()),
+        ("prices.csv".into(), table(&prices(outcome)).into_bytes()),
+    ]
+}
+
+/// Every limit with its price; the header alone where nothing is priced. Limits stand in their SI
+/// unit, which a column names.
+fn prices(outcome: &Outcome) -> Vec<Vec<String>> {
+    let header = [
+        "network",
+        "limit",
+        "end",
+        "output",
+        "unit",
+        "value",
+        "free_to",
+        "slack",
+        "tighter_to",
+        "tighter",
+        "tighter_area_um2",
+        "tighter_overhead_current_uA",
+        "tighter_network",
+        "looser_to",
+        "looser_area_um2",
+        "looser_overhead_current_uA",
+    ];
+    let mut rows = vec![header.map(str::to_owned).to_vec()];
+    let Some(prices) = &outcome.prices else {
+        return rows;
+    };
+    let changes = |step: &Step| -> [String; 3] {
+        let told = |area: f64, overhead: f64, rank: Option<usize>| {
+            [
+                format::number(area * 1e12),
+                format::number(overhead * 1e6),
+                rank.map(|rank| rank.to_string()).unwrap_or_default(),
+            ]
+        };
+        match step.verdict {
+            Verdict::Free => told(0.0, 0.0, None),
+            Verdict::Resized { area, overhead, .. } => told(area, overhead, None),
+            Verdict::Other {
+                rank,
+                area,
+                overhead,
+            } => told(area, overhead, Some(rank)),
+            Verdict::NotFound | Verdict::NotAllowed => [const { String::new() }; 3],
+        }
+    };
+    for price in &prices.limits {
+        let limit = price.limit;
+        let mut row = vec![
+            prices.rank.to_string(),
+            limit.key().to_owned(),
+            limit.end().unwrap_or_default().to_owned(),
+            price.output.clone().unwrap_or_default(),
+            limit.unit().to_owned(),
+            format::number(price.value),
+            format::number(price.free),
+            if price.slack(prices.noise) {
+                "yes"
+            } else {
+                "no"
+            }
+            .to_owned(),
+            format::number(price.tighter.to),
+            price.tighter.verdict.name().to_owned(),
+        ];
+        row.extend(changes(&price.tighter));
+        match &price.looser {
+            Some(looser) => {
+                let [area, overhead, _] = changes(looser);
+                row.extend([format::number(looser.to), area, overhead]);
+            }
+            None => row.extend([const { String::new() }; 3]),
+        }
+        rows.push(row);
+    }
+    rows
 }
 
 /// A table as RFC 4180 text: CRLF after every record; fields with a comma, a quote or a line

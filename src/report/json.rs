@@ -6,8 +6,8 @@
 
 use super::{Files, Format, view, words};
 use crate::explore::{
-    Advice, Broken, Change, DeviceRow, Explanation, FamilyReport, FigureValue, NetworkReport,
-    Outcome, OutputReport, Status,
+    Advice, Broken, Change, Chosen, DeviceRow, Explanation, FamilyReport, FigureValue, LimitPrice,
+    NetworkReport, Outcome, OutputReport, Prices, Status, Step, Verdict,
 };
 use crate::spec::{AccuracyOf, Effort, Flow, Output, Reference, Spec, Target};
 use crate::units;
@@ -128,6 +128,9 @@ struct Document {
     front: Vec<Network>,
     /// When nothing fits: the network that comes closest.
     nearest: Option<Network>,
+    /// What a small step of each limit costs, for one network of the front; null where nothing is
+    /// priced.
+    prices: Option<PriceList>,
     /// Counters of the work done.
     work: WorkDone,
     /// What to keep in mind before building on this.
@@ -256,6 +259,8 @@ struct SpecAsUnderstood {
     effort: SearchEffort,
     /// Seed of the search.
     seed: u64,
+    /// Rank of the network to be priced; null is the knee of the front.
+    price_of: Option<u32>,
 }
 
 /// Temperatures, K.
@@ -563,6 +568,99 @@ struct Curve {
     most: Vec<Number>,
 }
 
+/// Prices of the limits. Changes count from the network's structure solved for the limits as they
+/// are; what takes another network counts from the network itself.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct PriceList {
+    /// Rank of the network priced.
+    rank: usize,
+    /// Why this network.
+    chosen: PricedBecause,
+    /// Scale of the accuracy limits at which it stands; 1 unless accuracy is traded.
+    held: f64,
+    /// Area with the limits as they are, off the manufacturing grid, m2.
+    area: Number,
+    /// Overhead current of the same, A.
+    overhead_current: Number,
+    /// Changes of area up to this cannot be told from zero, m2.
+    noise: Number,
+    /// Every limit, in the order of the spec.
+    limits: Vec<PricedLimit>,
+    /// The next networks of the front, against the one priced.
+    exchanges: Vec<Neighbour>,
+}
+
+/// Why a network is the one priced.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(rename_all = "snake_case")]
+enum PricedBecause {
+    /// It is the knee of the front.
+    Knee,
+    /// Its rank was asked for.
+    Asked,
+    /// The rank asked for is not on the front; this is the knee.
+    AskedBeyondTheFront,
+}
+
+/// A limit with its price.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct PricedLimit {
+    /// Key of the spec.
+    key: &'static str,
+    /// Which end of a range, "low" or "high"; null for other keys.
+    end: Option<&'static str>,
+    /// Output it belongs to; null for budgets and the reference.
+    output: Option<String>,
+    /// SI unit of its values, "1" for a fraction.
+    unit: &'static str,
+    /// The limit.
+    value: Number,
+    /// How far it could tighten with the network as it stands; null is without bound.
+    free_to: Number,
+    /// Whether the step tighter costs nothing that could be told from zero.
+    slack: bool,
+    /// A small step tighter.
+    tighter: PricedStep,
+    /// The same step looser, where the tighter one is not free and this one was solved.
+    looser: Option<PricedStep>,
+    /// The price as a sentence.
+    sentence: String,
+}
+
+/// One step of a limit.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct PricedStep {
+    /// The limit after the step.
+    to: Number,
+    /// What the step comes to: free (the network as it stands keeps it), resized (new sizes in the
+    /// same structure), other_network (of the front), not_found, or not_allowed (no spec can ask
+    /// for it).
+    verdict: &'static str,
+    /// Change of area, m2; null where there is none to tell.
+    area: Number,
+    /// Change of overhead current, A; null where there is none to tell.
+    overhead_current: Number,
+    /// Rank of the other network.
+    network: Option<usize>,
+    /// Whether the network drawn for it is larger than the spec's limit on area.
+    over_area: bool,
+}
+
+/// A neighbour on the front.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Neighbour {
+    /// Its rank.
+    rank: usize,
+    /// Its area less that of the network priced, m2.
+    area: Number,
+    /// Its overhead current less that of the network priced, A.
+    overhead_current: Number,
+}
+
 /// Counters of the work done; independent of time and threads.
 #[derive(Debug, Serialize, JsonSchema)]
 #[serde(deny_unknown_fields)]
@@ -622,6 +720,7 @@ impl Document {
             spec: SpecAsUnderstood::from(&outcome.spec),
             front: outcome.front.iter().map(Network::from).collect(),
             nearest: outcome.nearest.as_deref().map(Network::from),
+            prices: outcome.prices.as_ref().map(PriceList::from),
             work: WorkDone {
                 shapes: work.shapes,
                 screened_out: work.screened_out,
@@ -643,6 +742,81 @@ impl Document {
                 networks_verified: work.networks_verified,
             },
             cautions: words::CAUTIONS.to_vec(),
+        }
+    }
+}
+
+impl From<&Prices> for PriceList {
+    fn from(prices: &Prices) -> PriceList {
+        PriceList {
+            rank: prices.rank,
+            chosen: match prices.chosen {
+                Chosen::Knee => PricedBecause::Knee,
+                Chosen::Asked => PricedBecause::Asked,
+                Chosen::Beyond { .. } => PricedBecause::AskedBeyondTheFront,
+            },
+            held: prices.held,
+            area: Number(prices.area),
+            overhead_current: Number(prices.overhead),
+            noise: Number(prices.noise),
+            limits: prices
+                .limits
+                .iter()
+                .map(|price| PricedLimit::new(prices, price))
+                .collect(),
+            exchanges: prices
+                .exchanges
+                .iter()
+                .map(|e| Neighbour {
+                    rank: e.rank,
+                    area: Number(e.area),
+                    overhead_current: Number(e.overhead),
+                })
+                .collect(),
+        }
+    }
+}
+
+impl PricedLimit {
+    fn new(prices: &Prices, price: &LimitPrice) -> PricedLimit {
+        PricedLimit {
+            key: price.limit.key(),
+            end: price.limit.end(),
+            output: price.output.clone(),
+            unit: price.limit.unit(),
+            value: Number(price.value),
+            free_to: Number(price.free),
+            slack: price.slack(prices.noise),
+            tighter: PricedStep::from(&price.tighter),
+            looser: price.looser.as_ref().map(PricedStep::from),
+            sentence: words::price_sentence(prices, price),
+        }
+    }
+}
+
+impl From<&Step> for PricedStep {
+    fn from(step: &Step) -> PricedStep {
+        let (area, overhead, network, over) = match step.verdict {
+            Verdict::Free => (0.0, 0.0, None, false),
+            Verdict::Resized {
+                area,
+                overhead,
+                over_area,
+            } => (area, overhead, None, over_area),
+            Verdict::Other {
+                rank,
+                area,
+                overhead,
+            } => (area, overhead, Some(rank), false),
+            Verdict::NotFound | Verdict::NotAllowed => (f64::NAN, f64::NAN, None, false),
+        };
+        PricedStep {
+            to: Number(step.to),
+            verdict: step.verdict.name(),
+            area: Number(area),
+            overhead_current: Number(overhead),
+            network,
+            over_area: over,
         }
     }
 }
@@ -751,6 +925,7 @@ impl From<&Spec> for SpecAsUnderstood {
                 Effort::Thorough => SearchEffort::Thorough,
             },
             seed: spec.search.seed,
+            price_of: spec.search.price_of,
         }
     }
 }

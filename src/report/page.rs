@@ -5,7 +5,9 @@
 //! exchanges the network shown. All text is laid out here, once: the script only places it.
 
 use super::{Files, Format, chart, devices, format, view, words};
-use crate::explore::{FamilyReport, NetworkReport, Outcome, OutputReport};
+use crate::explore::{
+    FamilyReport, LimitPrice, NetworkReport, Outcome, OutputReport, Prices, Step, Verdict,
+};
 use crate::spec::Rail;
 use maud::{DOCTYPE, Markup, PreEscaped, html};
 use serde::Serialize;
@@ -742,6 +744,7 @@ fn page(outcome: &Outcome) -> Markup {
                             a href="#outputs" { "Outputs" }
                             a href="#devices" { "Devices" }
                         }
+                        @if outcome.prices.is_some() { a href="#prices" { "Prices" } }
                         a href="#spec" { "Spec" }
                         a href="#work" { "Work" }
                         a href="#cautions" { "Cautions" }
@@ -783,6 +786,7 @@ fn page(outcome: &Outcome) -> Markup {
                         (front(outcome, &data))
                         (network(first))
                     }
+                    @if let Some(prices) = &outcome.prices { (price_list(prices)) }
                     (spec(outcome))
                     (work(outcome))
                     section #cautions {
@@ -880,6 +884,92 @@ fn network(first: &Network) -> Markup {
             div.scroll { table #device-table { (head_and_rows(&first.devices)) } }
         }
     }
+}
+
+/// What every limit costs: sentences for what costs something, the slack ones, all as numbers.
+fn price_list(prices: &Prices) -> Markup {
+    let slack = view::slack(prices);
+    html! {
+        section #prices {
+            h2 { "Prices of the limits" }
+            p.note { (print(words::prices_of(prices))) }
+            ul {
+                @for price in view::dear(prices) { li { (print(words::price_sentence(prices, price))) } }
+                @for sentence in words::exchanges(prices) { li { (print(sentence)) } }
+            }
+            @if !slack.is_empty() { p { (print(words::slack(prices, &slack))) } }
+            details {
+                summary { "Every limit as numbers" }
+                div.scroll { table #price-table { (head_and_rows(&price_table(prices))) } }
+            }
+        }
+    }
+}
+
+fn price_table(prices: &Prices) -> Table {
+    let dash = || "\u{2013}".to_owned();
+    let signed = |text: String, value: f64| {
+        if value > 0.0 {
+            format!("+{text}")
+        } else {
+            text
+        }
+    };
+    let changes = |step: &Step| match step.verdict {
+        Verdict::Free => ["0".to_owned(), "0".to_owned()],
+        Verdict::Resized { area, overhead, .. } | Verdict::Other { area, overhead, .. } => [
+            signed(print(format::area(area)), area),
+            signed(print(format::engineering(overhead, "A")), overhead),
+        ],
+        Verdict::NotFound | Verdict::NotAllowed => [dash(), dash()],
+    };
+    let row = |price: &LimitPrice| {
+        let unit = price.limit.unit();
+        let value = |value: f64| print(words::limit(value, unit));
+        let [area, overhead] = changes(&price.tighter);
+        let by = match price.tighter.verdict {
+            Verdict::Free => "as it stands".to_owned(),
+            Verdict::Resized { .. } => "new sizes".to_owned(),
+            Verdict::Other { rank, .. } => format!("network {rank}"),
+            Verdict::NotFound => "nothing found".to_owned(),
+            Verdict::NotAllowed => "no such limit".to_owned(),
+        };
+        let looser = match &price.looser {
+            Some(step) => {
+                let [area, _] = changes(step);
+                [value(step.to), area]
+            }
+            None => [dash(), dash()],
+        };
+        let free = if price.free == price.value {
+            dash()
+        } else {
+            value(price.free)
+        };
+        let mut row = vec![
+            words::limited(price),
+            value(price.value),
+            free,
+            value(price.tighter.to),
+            by,
+            area,
+            overhead,
+        ];
+        row.extend(looser);
+        row
+    };
+    let columns = [
+        ("limit", false),
+        ("value", true),
+        ("free to", true),
+        ("a step tighter", true),
+        ("kept by", false),
+        ("area", true),
+        ("overhead current", true),
+        ("a step looser", true),
+        ("area", true),
+    ];
+    table(columns, prices.limits.iter().map(row).collect())
 }
 
 fn spec(outcome: &Outcome) -> Markup {

@@ -4,6 +4,9 @@ use super::devices::columns;
 use super::{format, view, words};
 use crate::explore::Outcome;
 
+/// Prices shown, dearest first; the files hold them all.
+const DEAREST: usize = 8;
+
 /// Least width that a summary is laid out for; narrower terminals wrap.
 const NARROWEST: usize = 40;
 
@@ -27,6 +30,27 @@ pub fn summary(outcome: &Outcome, width: usize) -> String {
     if !networks.is_empty() {
         text.push('\n');
         text.push_str(&table(&networks, width));
+    }
+    if let Some(prices) = &outcome.prices {
+        text.push('\n');
+        paragraph(&mut text, &words::prices_of(prices), 0);
+        let dear = view::dear(prices);
+        for price in dear.iter().take(DEAREST) {
+            let sentence = words::price_sentence(prices, price);
+            paragraph(&mut text, &format!("- {sentence}"), 2);
+        }
+        if dear.len() > DEAREST {
+            let more = words::count(dear.len() - DEAREST, "limit");
+            let rest = format!("- {more} more cost less each; prices.csv holds them all.");
+            paragraph(&mut text, &rest, 2);
+        }
+        for sentence in words::exchanges(prices) {
+            paragraph(&mut text, &format!("- {sentence}"), 2);
+        }
+        let slack = view::slack(prices);
+        if !slack.is_empty() {
+            paragraph(&mut text, &words::slack(prices, &slack), 0);
+        }
     }
     let broken = words::broken(outcome);
     if !broken.is_empty() {

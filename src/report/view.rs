@@ -1,7 +1,9 @@
 //! What several formats pick out of an [`Outcome`]: which networks to show under which file
 //! name, and the worst values among what is already there. Nothing is computed anew.
 
-use crate::explore::{FigureValue, NetworkReport, Outcome, OutputReport};
+use crate::explore::{
+    FigureValue, LimitPrice, NetworkReport, Outcome, OutputReport, Prices, Verdict,
+};
 
 /// A network to show, with the stem of its files.
 #[derive(Debug, Clone, Copy)]
@@ -115,6 +117,29 @@ pub fn worst_headroom(network: &NetworkReport) -> Option<&OutputReport> {
             worst
         }
     })
+}
+
+/// The limits of which a step costs something, dearest first: what nothing was found for, then by
+/// the change of area.
+pub fn dear(prices: &Prices) -> Vec<&LimitPrice> {
+    let cost = |price: &LimitPrice| match price.tighter.verdict {
+        Verdict::NotFound => f64::INFINITY,
+        Verdict::Resized { area, .. } | Verdict::Other { area, .. } => area,
+        Verdict::Free | Verdict::NotAllowed => f64::NEG_INFINITY,
+    };
+    let mut dear: Vec<&LimitPrice> = prices
+        .limits
+        .iter()
+        .filter(|price| !price.slack(prices.noise) && price.tighter.verdict != Verdict::NotAllowed)
+        .collect();
+    dear.sort_by(|a, b| cost(b).total_cmp(&cost(a)));
+    dear
+}
+
+/// The limits of which a step costs nothing, in the order of the spec.
+pub fn slack(prices: &Prices) -> Vec<&LimitPrice> {
+    let slack = |price: &&LimitPrice| price.slack(prices.noise);
+    prices.limits.iter().filter(slack).collect()
 }
 
 /// The two figures the front is drawn over: the first two of the trade; a lone one is joined by

@@ -2,7 +2,8 @@
 
 use super::{format, view};
 use crate::explore::{
-    Advice, Broken, Change, Explanation, Impossible, NetworkReport, Outcome, Status,
+    Advice, Broken, Change, Chosen, Explanation, Impossible, Limit, LimitPrice, NetworkReport,
+    Outcome, Prices, Status, Step, Verdict,
 };
 use crate::spec::{AccuracyOf, Flow, Output, Rail, Reference, Target};
 use crate::units;
@@ -111,7 +112,7 @@ pub fn why(outcome: &Outcome) -> Option<&Explanation> {
 }
 
 /// A limit as a spec would state it, every digit kept: "5 210 um2", "1.4 %", "28.3 uA".
-fn limit(value: f64, unit: &str) -> String {
+pub fn limit(value: f64, unit: &str) -> String {
     match unit {
         "m2" => format::area(value),
         "V" => format::volts(value),
@@ -212,6 +213,197 @@ pub fn advice_title(why: &Explanation) -> &'static str {
             "Any one of these would do, each the least found, verified at every corner:"
         }
     }
+}
+
+/// Which network is priced and why, and how.
+pub fn prices_of(prices: &Prices) -> String {
+    let rank = prices.rank;
+    let why = match prices.chosen {
+        Chosen::Knee => format!("network {rank}, the knee of the front"),
+        Chosen::Asked => format!("network {rank}, as asked"),
+        Chosen::Beyond { asked } => {
+            format!("network {rank}, the knee of the front (there is no network {asked})")
+        }
+    };
+    let held = if prices.held == 1.0 {
+        String::new()
+    } else {
+        let share = format::percent(prices.held);
+        format!(" Accuracy is held at {share} of the spec's limits, as this network was made.")
+    };
+    format!(
+        "Prices of the limits, at {why}: its structure is held and its sizes are solved for again \
+         with one limit stepped, against the same with no limit stepped. Changes of area below {} \
+         cannot be told from zero.{held}",
+        format::area(prices.noise)
+    )
+}
+
+/// What is limited: "accuracy on preamp_tail", "overhead current". A low end of a range is the
+/// headroom left to an output.
+pub fn limited(price: &LimitPrice) -> String {
+    let what = match price.limit {
+        Limit::Accuracy(_) => "accuracy",
+        Limit::LowEnd(_) => "headroom",
+        Limit::HighEnd(_) => "top of the range",
+        Limit::OutputResistance(_) => "output resistance",
+        Limit::Area => "area",
+        Limit::OverheadCurrent => "overhead current",
+        Limit::Power => "power",
+        Limit::PinLeast => "bottom of the reference's range",
+        Limit::PinMost => "top of the reference's range",
+    };
+    match &price.output {
+        Some(output) => format!("{what} on {output}"),
+        None => what.to_owned(),
+    }
+}
+
+/// A step of a limit: "1 % tighter", "10 mV less".
+pub fn step(price: &LimitPrice, step: &Step) -> String {
+    let change = step.to - price.value;
+    let (up, down) = match price.limit {
+        Limit::Accuracy(_) => ("looser", "tighter"),
+        Limit::HighEnd(_) | Limit::PinLeast | Limit::PinMost => ("higher", "lower"),
+        _ => ("more", "less"),
+    };
+    let way = if change > 0.0 { up } else { down };
+    let amount = if price.limit.unit() == "V" {
+        format::millivolts(change.abs())
+    } else {
+        let share = change.abs() / price.value * 100.0;
+        format!("{share:.0} %")
+    };
+    format!("{amount} {way}")
+}
+
+/// A price as one sentence: "1 % tighter accuracy on adc_ref costs 210 um2."
+pub fn price_sentence(prices: &Prices, price: &LimitPrice) -> String {
+    let what = format!("{} {}", step(price, &price.tighter), limited(price));
+    let amps = |overhead: f64| {
+        // Held currents move by what is systematic in them: a hair, or worth saying.
+        let told = overhead.abs() > 1e-3 * prices.overhead;
+        let sign = if overhead < 0.0 { "less" } else { "more" };
+        let amount = format::engineering(overhead.abs(), "A");
+        told.then(|| format!("{amount} {sign} overhead current"))
+    };
+    let mut text = match price.tighter.verdict {
+        Verdict::Free => return format!("{what} costs nothing{}.", free(price)),
+        Verdict::Resized { area, .. } if area <= prices.noise => {
+            return format!(
+                "{what} costs nothing that could be told from zero{}.",
+                free(price)
+            );
+        }
+        Verdict::Resized {
+            area,
+            overhead,
+            over_area,
+        } => {
+            let more = amps(overhead)
+                .map(|a| format!(" and {a}"))
+                .unwrap_or_default();
+            let limit = if over_area {
+                ", more than the area limit allows"
+            } else {
+                ""
+            };
+            format!("{what} costs {}{more}{limit}", format::area(area))
+        }
+        Verdict::Other {
+            rank,
+            area,
+            overhead,
+        } => {
+            let sign = if area < 0.0 { "less" } else { "more" };
+            let more = amps(overhead).map(|a| format!(", {a}")).unwrap_or_default();
+            let area = format::area(area.abs());
+            format!("{what} takes network {rank}: {area} {sign} area{more}")
+        }
+        Verdict::NotFound => {
+            format!("{what} is kept neither by new sizes nor by another network of the front")
+        }
+        Verdict::NotAllowed => format!("{what} is no limit a spec can ask for"),
+    };
+    if let Some(looser) = &price.looser
+        && let Verdict::Resized { area, .. } = looser.verdict
+        && -area > prices.noise
+    {
+        let saved = format::area(-area);
+        text.push_str(&format!("; {} saves {saved}", step(price, looser)));
+    }
+    text.push_str(&free(price));
+    text.push('.');
+    text
+}
+
+/// ", free to 0.243 V": how far a limit tightens for nothing; empty where it does not.
+fn free(price: &LimitPrice) -> String {
+    if price.free == price.value {
+        return String::new();
+    }
+    format!(", free to {}", limit(price.free, price.limit.unit()))
+}
+
+/// Slack limits by kind, each with the value it could tighten to for nothing; one paragraph.
+pub fn slack(prices: &Prices, slack: &[&LimitPrice]) -> String {
+    let mut groups: Vec<(&str, Vec<String>)> = Vec::new();
+    for name in [
+        "accuracy: ",
+        "bottom of the range: ",
+        "top of the range: ",
+        "output resistance: ",
+        "",
+    ] {
+        groups.push((name, Vec::new()));
+    }
+    for price in slack {
+        // Where only new sizes make the step free, the step is how far it is known to go.
+        let value = match price.tighter.verdict {
+            Verdict::Free => price.free,
+            _ => price.tighter.to,
+        };
+        let value = limit(value, price.limit.unit());
+        let item = match &price.output {
+            Some(output) => format!("{output} {value}"),
+            None => format!("{} {value}", limited(price)),
+        };
+        let group = match price.limit {
+            Limit::Accuracy(_) => 0,
+            Limit::LowEnd(_) => 1,
+            Limit::HighEnd(_) => 2,
+            Limit::OutputResistance(_) => 3,
+            _ => 4,
+        };
+        groups[group].1.push(item);
+    }
+    let parts: Vec<String> = groups
+        .iter()
+        .filter(|(_, items)| !items.is_empty())
+        .map(|(name, items)| format!("{name}{}", items.join(", ")))
+        .collect();
+    format!(
+        "Slack: {} of {} limits. Each, one at a time, could tighten for nothing to: {}.",
+        slack.len(),
+        prices.limits.len(),
+        parts.join("; ")
+    )
+}
+
+/// What the neighbours on the front would change: one sentence for each.
+pub fn exchanges(prices: &Prices) -> Vec<String> {
+    let sentence = |e: &crate::explore::Exchange| {
+        let way = |value: f64| if value < 0.0 { "less" } else { "more" };
+        format!(
+            "Network {} instead: {} {} area, {} {} overhead current.",
+            e.rank,
+            format::area(e.area.abs()),
+            way(e.area),
+            format::engineering(e.overhead.abs(), "A"),
+            way(e.overhead),
+        )
+    };
+    prices.exchanges.iter().map(sentence).collect()
 }
 
 /// What an output is held to: "20.0 uA" or "2 x reference (20.0 uA)".

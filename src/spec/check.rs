@@ -440,6 +440,7 @@ fn search(file: Option<&SearchFile>) -> Search {
         seed: file
             .and_then(|f| f.seed)
             .map_or(defaults::SEED, |at| at.value.0),
+        price_of: file.and_then(|f| f.price_of).map(|at| small(at.value.0)),
     }
 }
 

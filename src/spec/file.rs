@@ -171,5 +171,7 @@ record! {
         optional effort: Effort,
         /// Same spec, same seed: same answer. 1 if left out.
         optional seed: Whole<0, { u64::MAX }>,
+        /// Rank of the network whose limits are priced; the knee of the front if left out.
+        optional price_of: Whole<1, 100>,
     }
 }

@@ -189,6 +189,8 @@ pub struct Search {
     pub effort: Effort,
     /// Same spec, same seed: same answer.
     pub seed: u64,
+    /// Rank of the network whose limits are priced; `None` is the knee of the front.
+    pub price_of: Option<u32>,
 }
 
 /// Search effort.

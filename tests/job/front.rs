@@ -1,6 +1,7 @@
 //! Dominance, the filter and the hypervolume against brute force and published values.
 
 use biasloom::front::hypervolume::hypervolume;
+use biasloom::front::knee::knee;
 use biasloom::front::{dominates, nondominated};
 use proptest::prelude::*;
 use rand::{Rng, SeedableRng};
@@ -222,4 +223,69 @@ fn an_archive_filled_one_by_one_is_the_front_of_all() {
             .collect();
         assert_eq!(archive, front);
     }
+}
+
+/// On a curve, the point farthest from the chord has the chord's slope (mean value theorem). With
+/// logarithms on a quarter circle that bends towards less, that is its middle, whatever the units.
+#[test]
+fn the_knee_of_an_arc_is_its_middle() {
+    const N: i32 = 40;
+    let arc: Vec<Vec<f64>> = (0..=N)
+        .map(|i| {
+            let angle = PI / 2.0 * f64::from(i) / f64::from(N);
+            let (u, v) = (1.0 - angle.cos(), 1.0 - angle.sin());
+            // A factor of 3 in one figure, of 50 in the other.
+            vec![1e-8 * 3f64.powf(u), 1e-5 * 50f64.powf(v)]
+        })
+        .collect();
+    assert_eq!(knee(&arc), Some(N as usize / 2));
+    // Figures of which more is better come in negative; their logarithms bend the other way.
+    let more: Vec<Vec<f64>> = arc.iter().map(|p| vec![p[0], -1.0 / p[1]]).collect();
+    assert_eq!(knee(&more), Some(N as usize / 2));
+}
+
+/// Against the distance from the chord as geometry has it: of every point of random fronts.
+#[test]
+fn the_knee_is_farthest_from_the_chord() {
+    let mut rng = Pcg64::seed_from_u64(18);
+    for _ in 0..200 {
+        let mut points: Vec<Vec<f64>> = (0..rng.random_range(3..30))
+            .map(|_| vec![rng.random_range(1.0..9.0), rng.random_range(1.0..9.0)])
+            .collect();
+        points = nondominated(&points)
+            .into_iter()
+            .map(|i| points[i].clone())
+            .collect();
+        points.sort_by(|a, b| a[0].total_cmp(&b[0]));
+        let n = points.len();
+        let at: Vec<[f64; 2]> = points.iter().map(|p| [p[0].ln(), p[1].ln()]).collect();
+        let ([x0, y0], [x1, y1]) = (at[0], at[n - 1]);
+        let scaled = |p: &[f64; 2]| [(p[0] - x0) / (x1 - x0), (p[1] - y1) / (y0 - y1)];
+        // A point's distance from a line is the cross product with the line's direction; positive
+        // on the side of the origin.
+        let distance = |p: &[f64; 2]| {
+            let ([a, b], [c, d], [u, v]) = (scaled(&at[0]), scaled(&at[n - 1]), scaled(p));
+            let along = [c - a, d - b];
+            let cross = along[1] * (u - a) - along[0] * (v - b);
+            cross / (along[0] * along[0] + along[1] * along[1]).sqrt()
+        };
+        if n < 3 {
+            continue;
+        }
+        let found = knee(&points).expect("there are points");
+        let most = at.iter().map(distance).fold(f64::NEG_INFINITY, f64::max);
+        close(distance(&at[found]), most, 1e-12);
+    }
+}
+
+#[test]
+fn a_knee_of_few_points_is_the_first() {
+    assert_eq!(knee(&[]), None);
+    assert_eq!(knee(&[vec![2.0, 3.0]]), Some(0));
+    assert_eq!(knee(&[vec![1.0, 5.0], vec![2.0, 3.0]]), Some(0));
+    // A figure that no two of them differ in, and one that crosses zero.
+    let flat = [vec![1.0, 7.0], vec![1.0, 7.0]];
+    assert_eq!(knee(&flat), Some(0));
+    let crossing = [vec![-1.0, 4.0], vec![0.1, 1.1], vec![1.0, 1.0]];
+    assert_eq!(knee(&crossing), Some(1));
 }

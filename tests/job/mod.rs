@@ -9,6 +9,7 @@ mod determinism;
 mod front;
 mod outside;
 mod paper;
+mod prices;
 mod proof;
 mod remeasure;
 mod robustness;

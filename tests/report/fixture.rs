@@ -131,6 +131,7 @@ fn spec(name: &str, title: &str, wanted: &[Wanted]) -> Spec {
         search: Search {
             effort: Effort::Normal,
             seed: 7,
+            price_of: None,
         },
     }
 }
@@ -602,7 +603,121 @@ pub fn found() -> Outcome {
             network(3, 1.6, &WANTED, &lean, &["n1", "p1", "n2", "p1"]),
         ],
         nearest: None,
+        prices: Some(prices()),
         work: work(),
+    }
+}
+
+/// Prices at network 2, one of every kind of verdict.
+fn prices() -> Prices {
+    let price = |limit: Limit, output: Option<&str>, value, free, to, verdict, looser| LimitPrice {
+        limit,
+        output: output.map(str::to_owned),
+        value,
+        free,
+        tighter: Step { to, verdict },
+        looser,
+    };
+    let resized = |area, overhead| Verdict::Resized {
+        area,
+        overhead,
+        over_area: false,
+    };
+    let looser = |to, area| {
+        Some(Step {
+            to,
+            verdict: resized(area, 0.0),
+        })
+    };
+    let preamp = Some("preamp");
+    Prices {
+        rank: 2,
+        chosen: Chosen::Knee,
+        held: 1.0,
+        area: 1.1e-9,
+        overhead: 13e-6,
+        noise: 0.2e-12,
+        limits: vec![
+            price(
+                Limit::Accuracy(0),
+                preamp,
+                0.02,
+                0.02,
+                0.0198,
+                resized(21e-12, 1e-9),
+                looser(0.0202, -20.2e-12),
+            ),
+            price(
+                Limit::LowEnd(0),
+                preamp,
+                0.3,
+                0.296,
+                0.29,
+                resized(84e-12, 120e-9),
+                None,
+            ),
+            price(
+                Limit::HighEnd(0),
+                preamp,
+                1.4,
+                1.51,
+                1.41,
+                Verdict::Free,
+                None,
+            ),
+            price(
+                Limit::OutputResistance(0),
+                preamp,
+                2e6,
+                2e6,
+                2.1e6,
+                resized(0.1e-12, 0.0),
+                looser(1.9e6, 0.0),
+            ),
+            price(
+                Limit::HighEnd(2),
+                Some("comparator"),
+                1.62,
+                1.62,
+                1.63,
+                Verdict::NotAllowed,
+                None,
+            ),
+            price(
+                Limit::LowEnd(3),
+                Some("oscillator"),
+                0.4,
+                0.4,
+                0.39,
+                Verdict::NotFound,
+                None,
+            ),
+            price(
+                Limit::OverheadCurrent,
+                None,
+                13.1e-6,
+                13e-6,
+                12.84e-6,
+                Verdict::Other {
+                    rank: 3,
+                    area: 400e-12,
+                    overhead: -2e-6,
+                },
+                None,
+            ),
+        ],
+        exchanges: vec![
+            Exchange {
+                rank: 1,
+                area: -100e-12,
+                overhead: 4e-6,
+            },
+            Exchange {
+                rank: 3,
+                area: 400e-12,
+                overhead: -2e-6,
+            },
+        ],
     }
 }
 
@@ -663,6 +778,7 @@ pub fn nothing_fits() -> Outcome {
         complete: true,
     };
     outcome.front.clear();
+    outcome.prices = None;
     outcome.nearest = Some(Box::new(nearest));
     outcome.status = Status::NothingFits { broken, why };
     outcome

@@ -15,6 +15,7 @@ fn text(name: &str, outcome: &biasloom::explore::Outcome, path: &str) -> String 
 #[test]
 fn csv() {
     insta::assert_snapshot!("csv", text("csv", &fixture::found(), "front.csv"));
+    insta::assert_snapshot!("csv_prices", text("csv", &fixture::found(), "prices.csv"));
     insta::assert_snapshot!(
         "csv_nothing_fits",
         text("csv", &fixture::nothing_fits(), "front.csv")
@@ -129,6 +130,7 @@ fn formats_are_distinct_and_repeatable() {
 fn an_empty_outcome_renders() {
     let mut outcome = fixture::found();
     outcome.front.clear();
+    outcome.prices = None;
     outcome.status = biasloom::explore::Status::Interrupted;
     for format in &FORMATS {
         for (path, bytes) in (format.render)(&outcome) {

@@ -97,6 +97,16 @@ const TERMS: &[(&str, &str, &str, Option<&str>)] = &[
         Some(INVERSION),
     ),
     (
+        "knee",
+        "the network of a front where giving a little of one figure stops buying much of the other",
+        "Every traded figure is put on a logarithmic scale and stretched over the front to the \
+         range from 0 to 1; the knee is the network farthest from the chord between the ends of \
+         the front. It is the network whose limits are priced, unless a rank is asked for.",
+        Some(
+            "Das, On characterizing the knee of the Pareto curve, Structural Optimization 18, 1999",
+        ),
+    ),
+    (
         "leg",
         "one branch of a family: equal units in parallel on its gate line",
         "Input legs take a current, output legs deliver one.",
@@ -135,6 +145,17 @@ const TERMS: &[(&str, &str, &str, Option<&str>)] = &[
         None,
     ),
     (
+        "price",
+        "what a small step of a limit costs in area and overhead current",
+        "The structure of one network is held and its sizes are solved for again, once for the \
+         limits as they are and once for each limit stepped: 1 % of an accuracy, 10 mV of a range, \
+         5 % of an output resistance, 1 % of the area, 2 % of overhead current or power. The \
+         price is the difference. Every answer is solved whole at every corner, off the \
+         manufacturing grid for the difference and drawn on it to show that it can be built. \
+         Where the structure cannot follow, the price is another network of the front.",
+        None,
+    ),
+    (
         "saturation_voltage",
         "the drain-source voltage from which a transistor's current hardly changes any more",
         "About four times the thermal voltage in weak inversion, and near the overdrive in strong \
@@ -145,6 +166,13 @@ const TERMS: &[(&str, &str, &str, Option<&str>)] = &[
         "sink",
         "an output that takes current from its load to ground",
         "Its pin voltage counts from ground; its devices are n-channel.",
+        None,
+    ),
+    (
+        "slack",
+        "said of a limit that could be tighter at no cost",
+        "The network as it stands keeps it with room to spare; the report says how far it could \
+         tighten, one limit at a time.",
         None,
     ),
     (
