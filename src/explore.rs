@@ -21,7 +21,7 @@ use crate::network::bench::Bench;
 use crate::network::probes::Pool;
 use crate::network::{Job, corners, measure};
 use crate::spec::Effort;
-use crate::{figures, front, search};
+use crate::{figures, front, proof, search};
 use rayon::prelude::*;
 use serde::Serialize;
 use std::sync::atomic::{AtomicBool, AtomicU64, Ordering};
@@ -92,7 +92,30 @@ pub fn explore(job: &Job, observer: &dyn Observer, stop: &AtomicBool) -> Outcome
         let work = &mut outcome.work;
         *why = advice::explain(job, &pool, &drawn, observer, stop, work);
     }
+    if outcome.status == Status::Found {
+        observer.stage("proving how small a network can be", 0);
+        outcome.proof = prove(job, &pool, &outcome.front, &mut outcome.work);
+    }
     outcome
+}
+
+/// Lower bounds for the networks of a front.
+fn prove(job: &Job, pool: &Pool, front: &[NetworkReport], work: &mut Work) -> Option<Proof> {
+    let prover = proof::Prover::new(job, pool)?;
+    work.dc_solutions += prover.solutions;
+    let figure = |network: &NetworkReport, name: &str| {
+        let found = network.figures.iter().find(|f| f.name == name);
+        found.map_or(f64::INFINITY, |f| f.value)
+    };
+    let networks: Vec<(f64, f64)> = front
+        .iter()
+        .map(|n| (figure(n, "overhead_current"), figure(n, "area")))
+        .collect();
+    let bounds = prover.prove(&networks);
+    Some(Proof {
+        declared: prover.declared,
+        bounds,
+    })
 }
 
 /// Networks for one scale of the accuracy limits, down a ladder of overhead budgets.
@@ -408,6 +431,7 @@ fn finish(
         front,
         nearest,
         prices,
+        proof: None,
         work,
     }
 }

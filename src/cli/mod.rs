@@ -7,6 +7,7 @@
 //! | 2 | an error: faults in a file, a wrong command line, a place that cannot be written |
 //! | 130 | aborted by a second Ctrl-C; nothing was written |
 
+mod audit;
 mod check;
 mod completions;
 mod explain;
@@ -43,6 +44,7 @@ struct Line {
 enum Command {
     Explore(explore::Explore),
     Check(check::Check),
+    Audit(audit::Audit),
     List(list::List),
     Explain(explain::Explain),
     Schema(schema::Schema),
@@ -68,6 +70,7 @@ pub fn main() -> ExitCode {
     let result = match line.command {
         Command::Explore(command) => command.run(&shell),
         Command::Check(command) => command.run(&shell),
+        Command::Audit(command) => command.run(&shell),
         Command::List(command) => command.run(&shell),
         Command::Explain(command) => command.run(&shell),
         Command::Schema(command) => command.run(&shell),

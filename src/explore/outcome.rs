@@ -4,6 +4,7 @@ use super::advice::Explanation;
 pub use super::prices::{Chosen, Exchange, LimitPrice, Prices, Step, Verdict};
 use crate::circuit::netlist::{Netlist, Node};
 pub use crate::network::work::Work;
+pub use crate::proof::{Certificate, Declared};
 use crate::spec::{Rail, Spec};
 use serde::Serialize;
 
@@ -24,8 +25,31 @@ pub struct Outcome {
     /// What every limit costs, for one network of the front; `None` where there is no front, or the
     /// run was stopped before they were known.
     pub prices: Option<Prices>,
+    /// How small any network could be at all; `None` where there is no front, or the run was stopped.
+    pub proof: Option<Proof>,
     /// What was done.
     pub work: Work,
+}
+
+/// Lower bounds on area, and what they cover.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Proof {
+    /// The design space that is covered.
+    pub declared: Declared,
+    /// One bound per network of the front, in its order.
+    pub bounds: Vec<Certificate>,
+}
+
+impl Proof {
+    /// How much more area than the smallest possible a network of the front has at most, fraction;
+    /// infinite where nothing is proved.
+    pub fn gap(&self, network: &NetworkReport) -> f64 {
+        let area = network.figures.iter().find(|f| f.name == "area");
+        match (area, self.bounds.get(network.rank.wrapping_sub(1))) {
+            (Some(area), Some(bound)) if bound.area > 0.0 => area.value / bound.area - 1.0,
+            _ => f64::INFINITY,
+        }
+    }
 }
 
 /// How an exploration ended.

@@ -32,6 +32,8 @@ fn render(outcome: &Outcome) -> Files {
             "worst_headroom_corner",
             "families",
             "cells",
+            "least_possible_area_um2",
+            "gap_percent",
         ]
         .map(str::to_owned),
     );
@@ -74,6 +76,18 @@ fn render(outcome: &Outcome) -> Files {
         }
         row.push(network.families.len().to_string());
         row.push(words::cells(network));
+        let proof = outcome.proof.as_ref().filter(|_| shown.fits);
+        let bound = proof.and_then(|p| p.bounds.get(network.rank - 1));
+        row.push(
+            bound
+                .map(|b| format::number(b.area * 1e12))
+                .unwrap_or_default(),
+        );
+        row.push(
+            proof
+                .map(|p| format::number(p.gap(network) * 100.0))
+                .unwrap_or_default(),
+        );
         rows.push(row);
     }
     vec![

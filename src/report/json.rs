@@ -7,7 +7,7 @@
 use super::{Files, Format, view, words};
 use crate::explore::{
     Advice, Broken, Change, Chosen, DeviceRow, Explanation, FamilyReport, FigureValue, LimitPrice,
-    NetworkReport, Outcome, OutputReport, Prices, Status, Step, Verdict,
+    NetworkReport, Outcome, OutputReport, Prices, Proof, Status, Step, Verdict,
 };
 use crate::spec::{AccuracyOf, Effort, Flow, Output, Reference, Spec, Target};
 use crate::units;
@@ -131,10 +131,92 @@ struct Document {
     /// What a small step of each limit costs, for one network of the front; null where nothing is
     /// priced.
     prices: Option<PriceList>,
+    /// How small any network could be at all; null where nothing is proved.
+    proof: Option<Proved>,
     /// Counters of the work done.
     work: WorkDone,
     /// What to keep in mind before building on this.
     cautions: Vec<&'static str>,
+}
+
+/// Lower bounds on area. `biasloom audit SPEC front.json` checks them again.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Proved {
+    /// The design space that the bounds cover.
+    design_space: DesignSpace,
+    /// What they do not cover.
+    not_covered: Vec<String>,
+    /// One bound per network of the front.
+    bounds: Vec<Bound>,
+}
+
+/// The design space that bounds cover.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct DesignSpace {
+    /// Cells a network may be made of.
+    cells: Vec<String>,
+    /// Least and most length of n-channel devices, m.
+    sink_lengths: Vec<Number>,
+    /// Least and most length of p-channel devices, m.
+    source_lengths: Vec<Number>,
+    /// Least and most inversion coefficient.
+    inversions: Vec<Number>,
+    /// Input currents of families, A.
+    input_currents: Vec<Number>,
+    /// Units in an input leg.
+    input_units: Vec<u32>,
+    /// Families in a chain from the reference at most.
+    depth: usize,
+}
+
+/// A lower bound and the dual prices that prove it.
+#[derive(Debug, Serialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Bound {
+    /// Rank of the network it belongs to.
+    rank: usize,
+    /// No network that meets the spec within the overhead current is smaller, m2.
+    area: Number,
+    /// How much larger the network is at most, fraction; null where nothing is proved.
+    gap: Number,
+    /// Overhead current that may be used, A.
+    overhead_current: Number,
+    /// Dual price of serving each output, m2, in the order of the spec.
+    output_prices: Vec<Number>,
+    /// Dual price of overhead current, m2/A.
+    overhead_price: Number,
+}
+
+impl Proved {
+    fn new(proof: &Proof, front: &[NetworkReport]) -> Proved {
+        let declared = &proof.declared;
+        Proved {
+            design_space: DesignSpace {
+                cells: declared.cells.clone(),
+                sink_lengths: numbers(&declared.lengths[0]),
+                source_lengths: numbers(&declared.lengths[1]),
+                inversions: numbers(&declared.inversions),
+                input_currents: numbers(&declared.currents),
+                input_units: declared.units.clone(),
+                depth: declared.depth,
+            },
+            not_covered: words::not_covered(proof),
+            bounds: front
+                .iter()
+                .zip(&proof.bounds)
+                .map(|(network, bound)| Bound {
+                    rank: network.rank,
+                    area: Number(bound.area),
+                    gap: Number(proof.gap(network)),
+                    overhead_current: Number(bound.overhead),
+                    output_prices: numbers(&bound.output_prices),
+                    overhead_price: Number(bound.overhead_price),
+                })
+                .collect(),
+        }
+    }
 }
 
 /// How an exploration ended.
@@ -721,6 +803,10 @@ impl Document {
             front: outcome.front.iter().map(Network::from).collect(),
             nearest: outcome.nearest.as_deref().map(Network::from),
             prices: outcome.prices.as_ref().map(PriceList::from),
+            proof: outcome
+                .proof
+                .as_ref()
+                .map(|proof| Proved::new(proof, &outcome.front)),
             work: WorkDone {
                 shapes: work.shapes,
                 screened_out: work.screened_out,

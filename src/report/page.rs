@@ -6,7 +6,7 @@
 
 use super::{Files, Format, chart, devices, format, view, words};
 use crate::explore::{
-    FamilyReport, LimitPrice, NetworkReport, Outcome, OutputReport, Prices, Step, Verdict,
+    FamilyReport, LimitPrice, NetworkReport, Outcome, OutputReport, Prices, Proof, Step, Verdict,
 };
 use crate::spec::Rail;
 use maud::{DOCTYPE, Markup, PreEscaped, html};
@@ -565,6 +565,7 @@ fn ranked_table(outcome: &Outcome) -> Table {
         let mut row = vec![
             shown.rank(),
             figure_text(network, "area"),
+            print(words::gap(outcome, shown)),
             figure_text(network, "overhead_current"),
         ];
         row.extend(extra.iter().map(|name| figure_text(network, name)));
@@ -580,6 +581,7 @@ fn ranked_table(outcome: &Outcome) -> Table {
     let mut head = vec![
         "rank".to_owned(),
         "area".to_owned(),
+        "gap".to_owned(),
         "overhead current".to_owned(),
     ];
     head.extend(extra.iter().map(|name| words::label(name)));
@@ -744,6 +746,7 @@ fn page(outcome: &Outcome) -> Markup {
                             a href="#outputs" { "Outputs" }
                             a href="#devices" { "Devices" }
                         }
+                        @if outcome.proof.is_some() { a href="#bounds" { "Bounds" } }
                         @if outcome.prices.is_some() { a href="#prices" { "Prices" } }
                         a href="#spec" { "Spec" }
                         a href="#work" { "Work" }
@@ -786,6 +789,7 @@ fn page(outcome: &Outcome) -> Markup {
                         (front(outcome, &data))
                         (network(first))
                     }
+                    @if let Some(proof) = &outcome.proof { (bounds(outcome, proof)) }
                     @if let Some(prices) = &outcome.prices { (price_list(prices)) }
                     (spec(outcome))
                     (work(outcome))
@@ -882,6 +886,23 @@ fn network(first: &Network) -> Markup {
             h2 { "Devices" }
             p.note { "Sizes of one unit; currents, inversion coefficient IC and voltages at the nominal corner." }
             div.scroll { table #device-table { (head_and_rows(&first.devices)) } }
+        }
+    }
+}
+
+/// How small a network could be at all: a sentence per network, and what is and is not covered.
+fn bounds(outcome: &Outcome, proof: &Proof) -> Markup {
+    html! {
+        section #bounds {
+            h2 { "How small it could be" }
+            p.note { (print(words::gap_note(proof))) }
+            ul {
+                @for network in &outcome.front {
+                    li { "Network " (network.rank) ": " (print(words::bound(proof, network))) }
+                }
+            }
+            p { "The bounds do not cover:" }
+            ul { @for line in words::not_covered(proof) { li { (print(line)) } } }
         }
     }
 }

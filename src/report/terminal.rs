@@ -29,7 +29,11 @@ pub fn summary(outcome: &Outcome, width: usize) -> String {
     let networks = view::networks(outcome);
     if !networks.is_empty() {
         text.push('\n');
-        text.push_str(&table(&networks, width));
+        text.push_str(&table(outcome, &networks, width));
+    }
+    if let Some(proof) = &outcome.proof {
+        text.push('\n');
+        paragraph(&mut text, &words::gap_note(proof), 0);
     }
     if let Some(prices) = &outcome.prices {
         text.push('\n');
@@ -114,9 +118,10 @@ pub fn summary(outcome: &Outcome, width: usize) -> String {
 }
 
 /// Columns of the wide layout, and whether each is aligned to the right.
-const WIDE: [(&str, bool); 7] = [
+const WIDE: [(&str, bool); 8] = [
     ("rank", true),
     ("area", true),
+    ("gap", true),
     ("overhead current", true),
     ("worst error", true),
     ("at output, corner", false),
@@ -125,16 +130,17 @@ const WIDE: [(&str, bool); 7] = [
 ];
 
 /// Columns of the narrow layout; what is missing stands on a line of its own below each row.
-const NARROW: [(&str, bool); 5] = [
+const NARROW: [(&str, bool); 6] = [
     ("rank", true),
     ("area", true),
+    ("gap", true),
     ("overhead", true),
     ("error", true),
     ("margin", true),
 ];
 
-fn table(networks: &[view::Shown<'_>], width: usize) -> String {
-    let rows: Vec<[String; WIDE.len()]> = networks.iter().map(row).collect();
+fn table(outcome: &Outcome, networks: &[view::Shown<'_>], width: usize) -> String {
+    let rows: Vec<[String; WIDE.len()]> = networks.iter().map(|n| row(outcome, n)).collect();
     let mut lines = vec![WIDE.map(|(name, _)| name.to_owned()).to_vec()];
     lines.extend(rows.iter().map(|row| row.to_vec()));
     let wide = columns(&lines, None, &WIDE.map(|(_, right)| right));
@@ -144,8 +150,8 @@ fn table(networks: &[view::Shown<'_>], width: usize) -> String {
     let mut lines = vec![NARROW.map(|(name, _)| name.to_owned()).to_vec()];
     lines.extend(
         rows.iter()
-            .map(|[rank, area, overhead, error, _, margin, _]| {
-                [rank, area, overhead, error, margin]
+            .map(|[rank, area, gap, overhead, error, _, margin, _]| {
+                [rank, area, gap, overhead, error, margin]
                     .map(String::clone)
                     .to_vec()
             }),
@@ -166,7 +172,7 @@ fn table(networks: &[view::Shown<'_>], width: usize) -> String {
     text
 }
 
-fn row(shown: &view::Shown<'_>) -> [String; WIDE.len()] {
+fn row(outcome: &Outcome, shown: &view::Shown<'_>) -> [String; WIDE.len()] {
     let network = shown.network;
     let figure = |name: &str| {
         view::figure(network, name).map_or("-".to_owned(), |figure| {
@@ -178,6 +184,7 @@ fn row(shown: &view::Shown<'_>) -> [String; WIDE.len()] {
     [
         shown.rank(),
         figure("area"),
+        words::gap(outcome, shown),
         figure("overhead_current"),
         error.map_or("-".to_owned(), |output| format::percent(output.error)),
         error.map_or("-".to_owned(), |output| {

@@ -3,7 +3,7 @@
 use super::{format, view};
 use crate::explore::{
     Advice, Broken, Change, Chosen, Explanation, Impossible, Limit, LimitPrice, NetworkReport,
-    Outcome, Prices, Status, Step, Verdict,
+    Outcome, Prices, Proof, Status, Step, Verdict,
 };
 use crate::spec::{AccuracyOf, Flow, Output, Rail, Reference, Target};
 use crate::units;
@@ -529,4 +529,90 @@ pub fn wrap(text: &str, width: usize) -> Vec<String> {
         lines.push(line);
     }
     lines
+}
+
+/// How much larger than the smallest possible a shown network is at most, for a table.
+pub fn gap(outcome: &Outcome, shown: &view::Shown<'_>) -> String {
+    match &outcome.proof {
+        Some(proof) if shown.fits && proof.gap(shown.network).is_finite() => {
+            format::percent(proof.gap(shown.network))
+        }
+        _ => "-".to_owned(),
+    }
+}
+
+/// A network's bound as a sentence.
+pub fn bound(proof: &Proof, network: &NetworkReport) -> String {
+    let Some(bound) = proof.bounds.get(network.rank.wrapping_sub(1)) else {
+        return String::new();
+    };
+    let gap = proof.gap(network);
+    if !gap.is_finite() {
+        return "No lower bound on its area was found.".to_owned();
+    }
+    format!(
+        "Within {} of the smallest possible: no network of the declared design space that meets \
+         the spec with at most {} of overhead current is smaller than {}.",
+        format::percent(gap),
+        format::quantity(bound.overhead, "A"),
+        format::quantity(bound.area, "m2"),
+    )
+}
+
+/// What the column of gaps says.
+pub fn gap_note(proof: &Proof) -> String {
+    format!(
+        "Gap: so much larger than the smallest possible network within the same overhead current, \
+         at most. Proved over {}. `biasloom explain gap` says what is not covered.",
+        design_space(proof)
+    )
+}
+
+/// The design space that bounds cover.
+pub fn design_space(proof: &Proof) -> String {
+    let declared = &proof.declared;
+    let cells: Vec<String> = declared.cells.iter().map(|c| label(c)).collect();
+    let [sink, source] = declared.lengths;
+    let lengths = |[least, most]: [f64; 2]| {
+        format!(
+            "{} to {}",
+            format::quantity(least, "m"),
+            format::quantity(most, "m")
+        )
+    };
+    let both = if sink == source {
+        lengths(sink)
+    } else {
+        format!("{} (sinks), {} (sources)", lengths(sink), lengths(source))
+    };
+    format!(
+        "cells {}, lengths {both}, inversion coefficients {} to {}, {} input currents, up to {} \
+         units in an input leg, chains of up to {} families",
+        cells.join(", "),
+        declared.inversions[0],
+        declared.inversions[1],
+        declared.currents.len(),
+        declared.units.iter().copied().max().unwrap_or(0),
+        declared.depth,
+    )
+}
+
+/// What a bound does not cover.
+pub fn not_covered(proof: &Proof) -> Vec<String> {
+    let declared = &proof.declared;
+    vec![
+        format!(
+            "Networks that meet the spec only because gate lines off by more than {} cancel.",
+            format::percent(declared.line_error)
+        ),
+        format!(
+            "Errors of a whole circuit that differ from the sum along its path by more than {} of \
+             a limit.",
+            format::percent(declared.paper)
+        ),
+        "The floors under area times variance are the least that descents found, less 1 %; they \
+         are tested on random sizes, not derived."
+            .to_owned(),
+        "Other cells, other input currents, and anything the process card does not say.".to_owned(),
+    ]
 }

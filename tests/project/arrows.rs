@@ -10,6 +10,7 @@ pub const ROWS: &[&[&str]] = &[
     &["cli"],
     &["report"],
     &["explore"],
+    &["proof"],
     &["search", "assembly"],
     &["figures", "front"],
     &["network"],

@@ -604,7 +604,31 @@ pub fn found() -> Outcome {
         ],
         nearest: None,
         prices: Some(prices()),
+        proof: Some(proof()),
         work: work(),
+    }
+}
+
+/// Bounds of the three networks: a near one, a far one, and nothing.
+fn proof() -> Proof {
+    let bound = |area: f64, overhead: f64| Certificate {
+        area,
+        overhead,
+        output_prices: vec![area / 4.0; 4],
+        overhead_price: 1e-4,
+    };
+    Proof {
+        declared: Declared {
+            cells: vec!["simple".to_owned(), "self_biased".to_owned()],
+            lengths: [[0.18e-6, 20e-6]; 2],
+            inversions: [0.01, 100.0],
+            currents: vec![1e-6, 10e-6],
+            units: vec![1, 2, 4],
+            depth: 5,
+            line_error: 0.02,
+            paper: 0.003,
+        },
+        bounds: vec![bound(1e-9, 30e-6), bound(2e-10, 33e-6), bound(0.0, 48e-6)],
     }
 }
 

@@ -75,6 +75,19 @@ const TERMS: &[(&str, &str, &str, Option<&str>)] = &[
         Some("Pareto, Manuel d'economie politique, 1909"),
     ),
     (
+        "gap",
+        "how much larger than the smallest possible network a network is at most",
+        "Proved for every network of the declared design space that meets the spec within the same \
+         overhead current: floors under the product of a leg's area and its mismatch variance, a \
+         relaxed network that every real one maps onto at no more cost, and dual prices for it. Not \
+         covered: networks that meet the spec only because systematic errors of lines beyond the \
+         stated size cancel; effects that a whole circuit shows and the sum along a path does not, \
+         beyond the stated share; other cells and input currents; and the floors themselves are the \
+         least that descents found, tested on random sizes. `biasloom audit` checks the bounds of \
+         a front.json again.",
+        Some("Lagrangian relaxation: Geoffrion, Mathematical Programming Study 2, 1974"),
+    ),
+    (
         "gate_line",
         "the wire that carries a gate voltage to all legs of a family",
         "What the input leg makes of its current, every leg on the line turns back into a current.",
