@@ -9,7 +9,7 @@
 
 use super::candidates::{Want, wants};
 use super::desk::{shape_of, variables};
-use super::improve::UNITS;
+use super::columns::UNITS;
 use crate::cells::solved::{Climate, Solved, Solver, resistor_factor};
 use crate::cells::{CELLS, Shape, Tech};
 use crate::device;

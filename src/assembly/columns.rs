@@ -18,7 +18,7 @@ use rayon::prelude::*;
 use std::collections::BTreeMap;
 
 /// Input units tried for a family.
-pub const UNITS: [u32; 12] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16, 20, 40];
+pub const UNITS: [u32; 13] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16, 20, 30, 40];
 /// Largest number of units in one leg.
 const UNITS_MOST: f64 = 400.0;
 /// Candidates handed to one task.

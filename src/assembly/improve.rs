@@ -8,14 +8,11 @@
 //! optima.
 
 use super::candidates::{Candidate, Want};
-use super::columns::{Feeds, shortlist};
-use super::plan::{Ceiling, Clerk, Ledger, Member, Plan, Price, Tally, charged};
+use super::columns::{Feeds, UNITS, shortlist};
+use super::plan::{Ceiling, Clerk, Ledger, Member, Plan, Price, Tally, charged, units_for};
 use rand::Rng;
 use rand_pcg::Pcg64Mcg;
 use std::sync::atomic::{AtomicBool, Ordering};
-
-/// Units tried for an input leg.
-pub(super) const UNITS: [u32; 13] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16, 20, 30, 40];
 
 /// What the search may use.
 #[derive(Debug, Clone)]
@@ -226,7 +223,10 @@ impl<'s, 'a> Search<'s, 'a> {
             self.reparent(&mut best);
             self.open(&mut best);
             self.close(&mut best);
-            if best.score >= before * (1.0 - 1e-4) || self.stopped() {
+            if self.stopped() {
+                return best;
+            }
+            if best.score >= before * (1.0 - 1e-4) && !self.refeed(&mut best) {
                 return best;
             }
         }
@@ -376,6 +376,68 @@ impl<'s, 'a> Search<'s, 'a> {
                 }
             }
         }
+    }
+
+    /// Another input current for a family, with units in it and in its parent that divide all their
+    /// legs evenly, and shapes to suit: changes that help only together, since each alone leaves a
+    /// leg that is no whole number of units. True where one helped.
+    fn refeed(&mut self, best: &mut Scored) -> bool {
+        /// A plan whose shapes do not suit yet may be worse by this factor.
+        const UNSUITED: f64 = 1.5;
+        let before = best.score;
+        let menu = self.menu;
+        for f in 1..best.plan.members.len() {
+            let Some(p) = best.plan.members[f].parent else {
+                continue;
+            };
+            let old = best.plan.clone();
+            for &current in &menu.currents {
+                if current == old.members[f].current {
+                    continue;
+                }
+                let mut plan = old.clone();
+                plan.members[f].current = current;
+                plan.members[f].units = self.evenly(&plan, f);
+                plan.members[p].units = self.evenly(&plan, p);
+                let mut trial = self.score(plan);
+                if trial.score < UNSUITED * best.score {
+                    self.reshape(&mut trial, f);
+                    self.reshape(&mut trial, p);
+                }
+                if trial.score < best.score * (1.0 - 1e-9) {
+                    *best = trial;
+                }
+            }
+        }
+        best.score < before * (1.0 - 1e-4)
+    }
+
+    /// Units in a family's input leg that leave its legs least rounded, for what they may err;
+    /// the fewest of equally good ones.
+    fn evenly(&self, plan: &Plan, f: usize) -> u32 {
+        /// What a feeder may err, fraction.
+        const FEEDER: f64 = 0.01;
+        let member = &plan.members[f];
+        let c = self.candidate(member.rail as usize, member.candidate);
+        let rounded = |units: u32| -> f64 {
+            let unit = member.current / f64::from(units);
+            let outputs = (0..plan.legs.len()).filter(|&k| plan.legs[k] == f).map(|k| {
+                let want = &self.ledger.wants[k];
+                units_for(want.current, unit).1.abs() / want.limit
+            });
+            let feeders = plan.members.iter().filter(|m| m.parent == Some(f));
+            let feeders = feeders.map(|m| units_for(m.current, unit).1.abs() / FEEDER);
+            let drawn = if c.drawable(unit, units) { 0.0 } else { 1.0 };
+            drawn + outputs.chain(feeders).sum::<f64>()
+        };
+        let mut best = (f64::INFINITY, UNITS[0]);
+        for &units in &UNITS {
+            let cost = rounded(units);
+            if cost < best.0 - 1e-6 {
+                best = (cost, units);
+            }
+        }
+        best.1
     }
 
     /// Opens a family for one output where that pays.
