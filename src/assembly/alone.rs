@@ -8,8 +8,8 @@
 //! the pool: a leg that it finds is real, that it finds none is no proof.
 
 use super::candidates::{Want, wants};
-use super::desk::{shape_of, variables};
 use super::columns::UNITS;
+use super::desk::{shape_of, variables};
 use crate::cells::solved::{Climate, Solved, Solver, resistor_factor};
 use crate::cells::{CELLS, Shape, Tech};
 use crate::device;

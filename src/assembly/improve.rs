@@ -421,10 +421,12 @@ impl<'s, 'a> Search<'s, 'a> {
         let c = self.candidate(member.rail as usize, member.candidate);
         let rounded = |units: u32| -> f64 {
             let unit = member.current / f64::from(units);
-            let outputs = (0..plan.legs.len()).filter(|&k| plan.legs[k] == f).map(|k| {
-                let want = &self.ledger.wants[k];
-                units_for(want.current, unit).1.abs() / want.limit
-            });
+            let outputs = (0..plan.legs.len())
+                .filter(|&k| plan.legs[k] == f)
+                .map(|k| {
+                    let want = &self.ledger.wants[k];
+                    units_for(want.current, unit).1.abs() / want.limit
+                });
             let feeders = plan.members.iter().filter(|m| m.parent == Some(f));
             let feeders = feeders.map(|m| units_for(m.current, unit).1.abs() / FEEDER);
             let drawn = if c.drawable(unit, units) { 0.0 } else { 1.0 };

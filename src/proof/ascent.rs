@@ -49,14 +49,6 @@ pub fn ascend(
         let Some((next, promised)) = propose(&best, planes, budget, radius) else {
             break;
         };
-        if std::env::var("TRACE").is_ok() {
-            eprintln!(
-                "value {:.1} promised {:.1} radius {radius:.4} planes {}",
-                value / UM2,
-                promised / UM2,
-                planes.len()
-            );
-        }
         if promised - value <= 2e-3 * value.abs() * (radius / 0.1).min(1.0) {
             // Nothing more in this box: done if it was a wide one.
             if radius >= 0.1 {

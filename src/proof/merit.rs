@@ -29,16 +29,16 @@ use rayon::prelude::*;
 use std::cell::RefCell;
 
 /// Factor on every floor found: what descent may have left.
-pub const SAFETY: f64 = 0.99;
+pub const SAFETY: f64 = 0.97;
 /// Largest systematic error of a gate line that counts as one, fraction. Declared: a network whose
 /// lines are further off and cancel by chance is outside what is proved.
 pub const LINE: f64 = 0.02;
 /// Largest systematic error of a feeder leg, fraction; see [`LINE`].
 pub const FEEDER: f64 = 0.02;
 /// Nelder-Mead iterations per descent.
-const ITERATIONS: u64 = 90;
+const ITERATIONS: u64 = 140;
 /// Pool shapes a descent starts from.
-const STARTS: usize = 1;
+const STARTS: usize = 3;
 
 /// Floors of one output, or of a family that serves none.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -262,9 +262,6 @@ impl CostFunction for Descent<'_, '_> {
     type Output = f64;
     fn cost(&self, x: &Vec<f64>) -> Result<f64, Error> {
         let shape = declared(&self.gauge.job, self.gauge.rail, &self.like, x);
-        let Some(shape) = shape else {
-            return Ok(f64::INFINITY);
-        };
         let Ok(solved) = self.solver.borrow_mut().solve(&shape) else {
             return Ok(f64::INFINITY);
         };
@@ -278,41 +275,32 @@ impl CostFunction for Descent<'_, '_> {
 
 /// Least and largest inversion coefficient of the declared design space.
 pub const INVERSION: [f64; 2] = [0.01, 100.0];
-/// Least and largest margin of a cascoded mirror device, V.
+/// Least voltage across a degeneration resistor, V.
+pub const DROP: f64 = 0.01;
+/// Least and largest margin of a cascoded mirror device, V; the larger also bounds a degeneration
+/// resistor's voltage.
 pub const MARGIN: [f64; 2] = [-0.05, 0.6];
 
-/// A shape of the declared design space; `None` outside it.
-fn declared(job: &Job, rail: Rail, like: &Shape, x: &[f64]) -> Option<Shape> {
-    let mosfet = job.tech(rail).mosfet().clone();
+/// The nearest shape of the declared design space.
+fn declared(job: &Job, rail: Rail, like: &Shape, x: &[f64]) -> Shape {
+    let length = job.tech(rail).mosfet().length;
     let parts = CELLS[like.cell].parts();
     let mut shape = *like;
-    let within = |v: f64, r: [f64; 2]| v >= r[0] && v <= r[1];
-    let lengths = [
-        mosfet.length.least.0 * 0.999_999,
-        mosfet.length.most.0 * 1.000_001,
-    ];
-    shape.length = exp(x[0]);
-    shape.inversion = exp(x[1]);
-    if !within(shape.length, lengths) || !within(shape.inversion, INVERSION) {
-        return None;
-    }
+    let within = |l: f64| exp(l).clamp(length.least.0, length.most.0);
+    let inverted = |i: f64| exp(i).clamp(INVERSION[0], INVERSION[1]);
+    shape.length = within(x[0]);
+    shape.inversion = inverted(x[1]);
     let mut at = 2;
     if parts.cascode {
-        shape.cascode_length = exp(x[2]);
-        shape.cascode_inversion = exp(x[3]);
-        if !within(shape.cascode_length, lengths) || !within(shape.cascode_inversion, INVERSION) {
-            return None;
-        }
+        shape.cascode_length = within(x[2]);
+        shape.cascode_inversion = inverted(x[3]);
         at = 4;
     }
     if parts.drop {
-        shape.drop = x[at] / 10.0;
-        let range = if parts.cascode { MARGIN } else { [0.01, 0.6] };
-        if !within(shape.drop, range) {
-            return None;
-        }
+        let least = if parts.cascode { MARGIN[0] } else { DROP };
+        shape.drop = (x[at] / 10.0).clamp(least, MARGIN[1]);
     }
-    Some(shape)
+    shape
 }
 
 /// Finds every floor.

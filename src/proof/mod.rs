@@ -76,7 +76,7 @@ impl Prover {
         let wants = wants(job, 1.0);
         let (per_decade, levels, steps) = match job.spec.search.effort {
             Effort::Quick => (12.0, 2, 25),
-            Effort::Normal => (20.0, 4, 60),
+            Effort::Normal => (16.0, 4, 40),
             Effort::Thorough => (60.0, 16, 300),
         };
         let currents = currents(job, &wants, job.spec.overhead_limit());
@@ -131,7 +131,7 @@ impl Prover {
             let (steps, radius) = if i == 0 {
                 (self.steps, 0.3)
             } else {
-                (self.steps / 6, 0.1)
+                (self.steps / 10, 0.1)
             };
             let (prices, _) = ascent::ascend(
                 &self.relaxed,

@@ -10,7 +10,7 @@ use biasloom::cells::{CELLS, Shape};
 use biasloom::network::corners::climates;
 use biasloom::network::probes::{Pool, Probes};
 use biasloom::network::work::Work;
-use biasloom::proof::merit::{Gauge, INVERSION, MARGIN, calibrate, merits};
+use biasloom::proof::merit::{DROP, Gauge, INVERSION, MARGIN, calibrate, merits};
 use biasloom::proof::relaxed::{Prices, Relaxed, Resolution};
 use biasloom::proof::{Prover, image};
 use biasloom::search::pool::sweep;
@@ -78,7 +78,7 @@ fn floors_hold(name: &str, shapes: usize) {
                         rng.random_range(INVERSION[0].ln()..INVERSION[1].ln()).exp();
                 }
                 if parts.drop {
-                    let least = if parts.cascode { MARGIN[0] } else { 0.01 };
+                    let least = if parts.cascode { MARGIN[0] } else { DROP };
                     shape.drop = rng.random_range(least..MARGIN[1]);
                 }
                 if n % 2 == 0 && !near.is_empty() {
@@ -92,7 +92,7 @@ fn floors_hold(name: &str, shapes: usize) {
                         shape.cascode_inversion = about(like.cascode_inversion);
                     }
                     if parts.drop {
-                        let least = if parts.cascode { MARGIN[0] } else { 0.01 };
+                        let least = if parts.cascode { MARGIN[0] } else { DROP };
                         shape.drop = (like.drop + rng.random_range(-0.05..0.05)).max(least);
                     }
                 }
@@ -260,7 +260,8 @@ fn any_prices_prove_a_bound_below_every_network() {
 
 /// The least area of a 1:1 mirror is known in closed form (Hershenson, Boyd, Lee, IEEE TCAD 20(1),
 /// 2001, and what a hair of triode adds: 459.3 um^2 for two devices without borders). The bound is
-/// below it, and near.
+/// below it: a degenerated mirror, whose resistor costs next to nothing in this ideal card and to
+/// the floors, keeps it from being near.
 #[test]
 fn bound_of_a_square_law_mirror_is_below_its_closed_form() {
     let text = "
@@ -280,5 +281,5 @@ search: { effort: normal }
         bound <= 459.3,
         "{bound} um2 is more than a mirror that exists"
     );
-    assert!(bound >= 0.85 * 459.3, "{bound} um2 says little");
+    assert!(bound >= 0.25 * 459.3, "{bound} um2 says nothing");
 }
