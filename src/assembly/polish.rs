@@ -253,7 +253,7 @@ pub fn polish<'a>(
         }
         if round > 0 || effort.iterations > 0 {
             let radius = if round < effort.rounds { 0.06 } else { 0.03 };
-            slp::settle(&mut desk.borrow_mut(), radius);
+            slp::settle(&mut desk.borrow_mut(), radius, 1e-5);
             // The swarm and the simplex finish what straight lines leave: kinks where the worst
             // corner changes.
             if round + 2 == effort.rounds && effort.swarm.0 > 0 {

@@ -8,6 +8,7 @@
 //! circuits at every corner and keep every limit, or there is no answer.
 
 use super::build::{build, build_exact};
+use super::candidates::Want;
 use super::desk::Desk;
 use super::plan::Ledger;
 use super::polish::{correct, excess};
@@ -22,6 +23,8 @@ use crate::spec::Rail;
 
 /// Limits on paper stay this share inside: half of it is what drawing to the grid may use up.
 const INSIDE: f64 = 0.9995;
+/// Paper and circuit agree on every limit when a correction moves none by more than this share.
+const AGREED: f64 = 2e-4;
 /// Attempts to draw an exact answer.
 const DRAWINGS: usize = 6;
 /// Excess beyond which another attempt would not help.
@@ -36,6 +39,8 @@ pub struct Pace {
     pub rounds: usize,
     /// Factor on the trust region from one descent to the next.
     pub shrink: f64,
+    /// A gain of this share of area ends a descent.
+    pub gain: f64,
 }
 
 /// A structure solved for a job's limits; every limit is kept at every corner.
@@ -60,6 +65,14 @@ pub struct Effort {
     pub evaluations: u64,
     /// DC solutions of whole networks.
     pub solutions: u64,
+}
+
+impl Effort {
+    /// Counts more effort in.
+    pub fn add(&mut self, more: Effort) {
+        self.evaluations += more.evaluations;
+        self.solutions += more.solutions;
+    }
 }
 
 /// Largest overhead current over the corners, A.
@@ -126,8 +139,13 @@ fn solved(
             }
             inside -= 1.0 - INSIDE;
         }
-        correct(desk, &measured, 1.0, inside);
-        slp::settle(desk, radius);
+        let before = desk.wants.clone();
+        calibrate(desk, &measured, inside);
+        if round > 0 && over == 0.0 && shift(&before, &desk.wants) < AGREED {
+            best = Some((shapes, measured));
+            break;
+        }
+        slp::settle(desk, radius, pace.gain);
         radius *= pace.shrink;
     }
     let (shapes, exact) = best?;
@@ -154,11 +172,44 @@ fn solved(
             break;
         }
         inside -= 1.0 - INSIDE;
-        correct(desk, &measured, 1.0, inside);
+        calibrate(desk, &measured, inside);
         slp::descend(desk, 0.03);
         on_grid = desk.shapes();
     }
     None
+}
+
+/// Moves the limits on paper so that paper and whole circuit agree where they stand, `inside` of the
+/// spec's. Output resistances are set by what paper and circuit say of the same leg: a start far
+/// outside a stepped limit must not be taken for a paper that is wrong by as much.
+fn calibrate(desk: &mut Desk, measured: &Measured, inside: f64) {
+    correct(desk, measured, 1.0, inside);
+    for (k, output) in desk.ledger.job.spec.outputs.iter().enumerate() {
+        let Some(least) = output.output_resistance else {
+            continue;
+        };
+        let member = &desk.plan.members[desk.plan.legs[k]];
+        let rail = member.rail as usize;
+        let low = desk.pool.probes[rail].index(output.range.least.0);
+        let paper = desk.pool.shapes[rail][member.candidate].probes[low].early;
+        let circuit = measured.worst[k].resistance * desk.wants[k].current;
+        if circuit.is_finite() && circuit > 0.0 && paper > 0.0 {
+            let asked = least.0 * desk.wants[k].current;
+            desk.wants[k].early = asked * (paper / circuit) / inside;
+        }
+    }
+    desk.renew();
+}
+
+/// The largest share by which a correction moved a limit.
+fn shift(before: &[Want], after: &[Want]) -> f64 {
+    let moved = |a: f64, b: f64| {
+        if a == b { 0.0 } else { (b / a - 1.0).abs() }
+    };
+    let pairs = before.iter().zip(after);
+    pairs
+        .map(|(a, b)| moved(a.limit, b.limit).max(moved(a.early, b.early)))
+        .fold(0.0, f64::max)
 }
 
 /// Voltages the reference pin may have, V to ground.

@@ -18,10 +18,10 @@ use std::collections::BTreeMap;
 const STEP: f64 = 0.01;
 /// Trust region at which the descent ends.
 const FINE: f64 = 0.004;
+/// A step this long or shorter leaves slopes good enough to go on with.
+const NEAR: f64 = 0.02;
 /// Bound of a variable at which it stands still.
 const STILL: f64 = 2e-4;
-/// A gain in ln(area) that settling counts as none.
-const SETTLED: f64 = 1e-5;
 /// Linearisations at most.
 const ROUNDS: usize = 24;
 /// Charge for exceeding a limit by a factor e, in units of ln(area). An exact penalty must exceed
@@ -102,13 +102,14 @@ pub(super) fn descend(desk: &mut Desk, radius: f64) {
     place(desk, &start);
 }
 
-/// Settles at the least area from the desk's present shapes, a first step being at most `radius`.
+/// Settles at the least area from the desk's present shapes, a first step being at most `radius`;
+/// two gains in a row below `gain` (in ln of area) are the end.
 ///
 /// A descent within one trust region ends where the bent directions make it small, however far the
 /// straight ones would still go. Here every variable has a bound of its own, wider after two steps
 /// the same way and narrower after a turn: moving limits, as in Svanberg, Int. J. Numerical Methods
 /// in Engineering 24, 1987.
-pub(super) fn settle(desk: &mut Desk, radius: f64) {
+pub(super) fn settle(desk: &mut Desk, radius: f64, gain: f64) {
     let start = desk.shapes();
     desk.snap = false;
     let Some(mut here) = Point::at(desk, start.clone()) else {
@@ -118,46 +119,60 @@ pub(super) fn settle(desk: &mut Desk, radius: f64) {
     };
     let mut most = alike(&here.shapes, radius);
     let mut last: Option<Step> = None;
+    // Slopes cost most. Those of a point near by serve as long as they lead downhill well enough;
+    // only fresh ones may say that there is nothing left to gain.
     let mut slopes: Option<Slopes> = None;
+    let mut fresh = false;
     let mut small = 0;
     for _ in 0..ROUNDS {
         if most.iter().flatten().all(|&m| m < STILL) {
             break;
         }
-        let at = slopes.get_or_insert_with(|| differentiate(desk, &here));
+        let at = slopes.get_or_insert_with(|| {
+            fresh = true;
+            differentiate(desk, &here)
+        });
         let Some((step, next)) = stepped(desk, &here, at, &most) else {
             break;
         };
-        match next {
-            Some(next) if next.merit < here.merit => {
-                small = if here.merit - next.merit < SETTLED {
-                    small + 1
-                } else {
-                    0
-                };
-                here = next;
-                slopes = None;
-                if small > 1 {
-                    break;
-                }
-                for (f, list) in most.iter_mut().enumerate() {
-                    for (i, m) in list.iter_mut().enumerate() {
-                        // A step well inside its bound is the model's own choice.
-                        if step[f][i].abs() < 0.5 * *m {
-                            continue;
-                        }
-                        let before = last.as_ref().map_or(0.0, |last| last[f][i]);
-                        if before * step[f][i] > 0.0 {
-                            *m = (*m * 1.6).min(0.3);
-                        } else if before * step[f][i] < 0.0 {
-                            *m *= 0.5;
-                        }
-                    }
-                }
-                last = Some(step);
-            }
-            _ => most.iter_mut().flatten().for_each(|m| *m *= 0.4),
+        let better = next.filter(|next| next.merit < here.merit);
+        let gained = better.as_ref().map_or(0.0, |next| here.merit - next.merit);
+        if gained < gain && !fresh {
+            slopes = None;
         }
+        let Some(next) = better else {
+            if fresh {
+                most.iter_mut().flatten().for_each(|m| *m *= 0.4);
+            }
+            continue;
+        };
+        here = next;
+        if fresh {
+            small = if gained < gain { small + 1 } else { 0 };
+            if small > 1 {
+                break;
+            }
+        }
+        let longest = step.iter().flatten().fold(0.0, |a: f64, d| a.max(d.abs()));
+        if longest > NEAR {
+            slopes = None;
+        }
+        fresh = false;
+        for (f, list) in most.iter_mut().enumerate() {
+            for (i, m) in list.iter_mut().enumerate() {
+                // A step well inside its bound is the model's own choice.
+                if step[f][i].abs() < 0.5 * *m {
+                    continue;
+                }
+                let before = last.as_ref().map_or(0.0, |last| last[f][i]);
+                if before * step[f][i] > 0.0 {
+                    *m = (*m * 1.6).min(0.3);
+                } else if before * step[f][i] < 0.0 {
+                    *m *= 0.5;
+                }
+            }
+        }
+        last = Some(step);
     }
     desk.snap = desk.on_grid;
     if !place(desk, &here.shapes) {

@@ -1,7 +1,7 @@
 //! What an exploration ends in.
 
 use super::advice::Explanation;
-pub use super::prices::{Chosen, Exchange, LimitPrice, Prices, Step, Verdict};
+pub use super::prices::{Chosen, DEAREST, Exchange, LimitPrice, Prices, Step, Verdict};
 use crate::circuit::netlist::{Netlist, Node};
 pub use crate::network::work::Work;
 pub use crate::proof::{Certificate, Declared};

@@ -96,11 +96,21 @@ pub struct LimitPrice {
     pub free: f64,
     /// A small step tighter.
     pub tighter: Step,
-    /// The same step looser, where a tighter one is not free.
+    /// The same step looser, for the limits whose step tighter is dearest.
     pub looser: Option<Step>,
 }
 
 impl LimitPrice {
+    /// What the step tighter costs in area, m^2: infinite where nothing was found that keeps it, 0
+    /// where it is free or no spec can ask for it.
+    pub fn cost(&self) -> f64 {
+        match self.tighter.verdict {
+            Verdict::NotFound => f64::INFINITY,
+            Verdict::Resized { area, .. } | Verdict::Other { area, .. } => area,
+            Verdict::Free | Verdict::NotAllowed => 0.0,
+        }
+    }
+
     /// Whether the step tighter costs no area that could be told from zero: by the network as it
     /// stands, or with new sizes.
     pub fn slack(&self, noise: f64) -> bool {
@@ -150,6 +160,7 @@ const REST: Pace = Pace {
     radius: 0.06,
     rounds: 3,
     shrink: 1.0,
+    gain: 1e-5,
 };
 /// How often, at most.
 const RESTS: usize = 10;
@@ -160,7 +171,17 @@ const STEP: Pace = Pace {
     radius: 0.03,
     rounds: 2,
     shrink: 0.4,
+    gain: 5e-5,
 };
+/// What cannot be reached that way is tried once more from further out.
+const FAR: Pace = Pace {
+    radius: 0.1,
+    rounds: 5,
+    shrink: 0.7,
+    gain: 5e-5,
+};
+/// Limits that are also stepped the other way: those whose step tighter is dearest.
+pub const DEAREST: usize = 8;
 /// A step of voltage, V.
 const VOLTS: f64 = 0.01;
 /// Changes of area below this share are digits of the descent.
@@ -188,7 +209,8 @@ pub(super) fn prices(
         card: job.card,
     };
     let asked = Limit::all(&spec);
-    watch.stage("pricing limits", asked.len() as u64 + 2);
+    let steps = 2 + asked.len() + asked.len().min(DEAREST);
+    watch.stage("pricing limits", steps as u64);
     let done = AtomicU64::new(0);
     let step = || watch.advance(done.fetch_add(1, Ordering::Relaxed) + 1);
     let mut effort = Effort::default();
@@ -223,16 +245,38 @@ pub(super) fn prices(
             priced
         })
         .collect();
-    if stop.load(Ordering::Relaxed) {
-        return None;
+    let mut limits: Vec<LimitPrice> = Vec::with_capacity(priced.len());
+    for (price, spent) in priced {
+        effort.add(spent);
+        limits.push(price);
     }
-    for (_, spent) in &priced {
-        effort.evaluations += spent.evaluations;
-        effort.solutions += spent.solutions;
+    let mut dearest: Vec<usize> = (0..limits.len())
+        .filter(|&i| limits[i].cost() > 0.0)
+        .collect();
+    dearest.sort_by(|&a, &b| {
+        limits[b]
+            .cost()
+            .total_cmp(&limits[a].cost())
+            .then(a.cmp(&b))
+    });
+    dearest.truncate(DEAREST);
+    let looser: Vec<(Option<Step>, Effort)> = dearest
+        .par_iter()
+        .map(|&i| {
+            let looser = till.looser(&limits[i]);
+            step();
+            looser
+        })
+        .collect();
+    for (i, (step, spent)) in dearest.into_iter().zip(looser) {
+        effort.add(spent);
+        limits[i].looser = step;
     }
     work.polish_evaluations += effort.evaluations;
     work.dc_solutions += effort.solutions;
-    let limits: Vec<LimitPrice> = priced.into_iter().map(|p| p.0).collect();
+    if stop.load(Ordering::Relaxed) {
+        return None;
+    }
     let noise = limits
         .iter()
         .map(doubt)
@@ -329,15 +373,6 @@ impl Till<'_> {
                 .resized(limit, &spec, &mut effort)
                 .unwrap_or_else(|| self.other(limit, &spec, &mut bench)),
         };
-        let looser = match verdict {
-            Verdict::Free => None,
-            _ => {
-                let to = stepped(limit, value, -1.0);
-                put(limit, spec, to)
-                    .and_then(|spec| self.resized(limit, &spec, &mut effort))
-                    .map(|verdict| Step { to, verdict })
-            }
-        };
         effort.solutions += bench.solutions;
         let priced = LimitPrice {
             limit,
@@ -345,9 +380,19 @@ impl Till<'_> {
             value,
             free,
             tighter: Step { to, verdict },
-            looser,
+            looser: None,
         };
         (priced, effort)
+    }
+
+    /// The step of a priced limit the other way.
+    fn looser(&self, price: &LimitPrice) -> (Option<Step>, Effort) {
+        let mut effort = Effort::default();
+        let to = stepped(price.limit, price.value, -1.0);
+        let step = put(price.limit, self.job.spec, to)
+            .and_then(|spec| self.resized(price.limit, &spec, &mut effort))
+            .map(|verdict| Step { to, verdict });
+        (step, effort)
     }
 
     /// New sizes in the same structure.
@@ -364,7 +409,9 @@ impl Till<'_> {
             // Currents are the structure's, and the least area has been found already.
             Limit::OverheadCurrent | Limit::Power => return None,
             Limit::Area => (self.base.drawn_area <= most).then(|| self.base.clone())?,
-            _ => resolve(&job, &self.base.exact, STEP, effort)?,
+            _ => [STEP, FAR]
+                .into_iter()
+                .find_map(|pace| resolve(&job, &self.base.exact, pace, effort))?,
         };
         Some(Verdict::Resized {
             area: found.area - self.base.area,

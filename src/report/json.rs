@@ -705,7 +705,7 @@ struct PricedLimit {
     slack: bool,
     /// A small step tighter.
     tighter: PricedStep,
-    /// The same step looser, where the tighter one is not free and this one was solved.
+    /// The same step looser, for the limits whose step tighter is dearest.
     looser: Option<PricedStep>,
     /// The price as a sentence.
     sentence: String,

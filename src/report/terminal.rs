@@ -2,10 +2,7 @@
 
 use super::devices::columns;
 use super::{format, view, words};
-use crate::explore::Outcome;
-
-/// Prices shown, dearest first; the files hold them all.
-const DEAREST: usize = 8;
+use crate::explore::{DEAREST, Outcome};
 
 /// Least width that a summary is laid out for; narrower terminals wrap.
 const NARROWEST: usize = 40;

@@ -122,17 +122,12 @@ pub fn worst_headroom(network: &NetworkReport) -> Option<&OutputReport> {
 /// The limits of which a step costs something, dearest first: what nothing was found for, then by
 /// the change of area.
 pub fn dear(prices: &Prices) -> Vec<&LimitPrice> {
-    let cost = |price: &LimitPrice| match price.tighter.verdict {
-        Verdict::NotFound => f64::INFINITY,
-        Verdict::Resized { area, .. } | Verdict::Other { area, .. } => area,
-        Verdict::Free | Verdict::NotAllowed => f64::NEG_INFINITY,
-    };
     let mut dear: Vec<&LimitPrice> = prices
         .limits
         .iter()
         .filter(|price| !price.slack(prices.noise) && price.tighter.verdict != Verdict::NotAllowed)
         .collect();
-    dear.sort_by(|a, b| cost(b).total_cmp(&cost(a)));
+    dear.sort_by(|a, b| b.cost().total_cmp(&a.cost()));
     dear
 }
 

@@ -90,7 +90,7 @@ fn only_the_formats_named_are_written() {
     let names: BTreeSet<&str> = files.keys().filter_map(|file| file.to_str()).collect();
     assert_eq!(
         names,
-        BTreeSet::from([".biasloom-files", "front.csv", "front.svg"])
+        BTreeSet::from([".biasloom-files", "front.csv", "front.svg", "prices.csv"])
     );
 }
 
@@ -129,6 +129,8 @@ fn options_stand_above_the_spec() {
         "42",
         "--effort",
         "normal",
+        "--price-of",
+        "1",
         "--format",
         "json",
     ];
@@ -137,6 +139,9 @@ fn options_stand_above_the_spec() {
     let front: serde_json::Value = serde_json::from_str(&text).unwrap();
     assert_eq!(front["spec"]["seed"], 42);
     assert_eq!(front["spec"]["effort"], "normal");
+    assert_eq!(front["spec"]["price_of"], 1);
+    assert_eq!(front["prices"]["rank"], 1);
+    assert_eq!(front["prices"]["chosen"], "asked");
 }
 
 /// A second run takes the place of the first; what others put into the folder stays.

@@ -252,6 +252,7 @@ fn a_stepped_network_keeps_its_limit() {
         radius: 0.3,
         rounds: 4,
         shrink: 1.0,
+        gain: 1e-5,
     };
     let solved = resolve(&job, &start, pace, &mut Spent::default()).expect("it was priced");
     let grid = task.card.nmos.grid.0;
