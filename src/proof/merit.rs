@@ -30,6 +30,10 @@ use std::cell::RefCell;
 
 /// Factor on every floor found: what descent may have left.
 pub const SAFETY: f64 = 0.97;
+/// The same for floors of lines: which voltages count hangs on the shape, and descents stop early.
+pub const LINE_SAFETY: f64 = 0.9;
+/// The same for families that only feed: nothing but the feeder above them bounds their inversion.
+pub const BARE_SAFETY: f64 = 0.4;
 /// Largest systematic error of a gate line that counts as one, fraction. Declared: a network whose
 /// lines are further off and cancel by chance is outside what is proved.
 pub const LINE: f64 = 0.02;
@@ -395,8 +399,18 @@ pub fn merits(job: &Job, pool: &Pool, wants: &[Want]) -> (Merits, usize) {
                     evaluations += solver.borrow().solutions;
                 }
             }
-            let [own, line, density] = best.map(|b| b * SAFETY);
-            (Some(Merit { own, line, density }), evaluations)
+            let [own, line, density] = best;
+            let merit = Merit {
+                own: own * SAFETY,
+                line: line
+                    * if output.is_some() {
+                        LINE_SAFETY
+                    } else {
+                        BARE_SAFETY
+                    },
+                density: density * SAFETY,
+            };
+            (Some(merit), evaluations)
         })
         .collect();
     let evaluations = found.iter().map(|f| f.1).sum();

@@ -610,7 +610,7 @@ pub fn not_covered(proof: &Proof) -> Vec<String> {
              a limit.",
             format::percent(declared.paper)
         ),
-        "The floors under area times variance are the least that descents found, less 3 %; they \
+        "The floors under area times variance are the least that descents found, less a margin of 3 % and more; they \
          are tested on random sizes, not derived."
             .to_owned(),
         "Other cells, other input currents, and anything the process card does not say.".to_owned(),
