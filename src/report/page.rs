@@ -787,6 +787,7 @@ fn page(outcome: &Outcome) -> Markup {
                         (network(first))
                     }
                     @if let Some(prices) = &outcome.prices { (price_list(prices)) }
+                    @if let Some(why) = words::no_prices(outcome) { p.note { (why) } }
                     (spec(outcome))
                     (work(outcome))
                     section #cautions {
