@@ -15,6 +15,9 @@ use std::collections::BTreeMap;
 /// How far inside an error limit a descent aims: what straight lines miss, and a snapped length.
 const MARGIN: f64 = 5e-4;
 
+/// Share of a permitted fall that a descent aims at.
+pub(super) const OF_FALL: f64 = 0.95;
+
 pub(super) struct Desk<'l, 'a> {
     pub(super) ledger: &'l Ledger<'a>,
     pub(super) plan: Plan,
@@ -212,7 +215,7 @@ impl<'l, 'a> Desk<'l, 'a> {
                 let middle = &solved.probes[probes.index(middle)];
                 let fall = 1.0 - (1.0 + low.error[0]) / (1.0 + middle.error[0]);
                 // A share of the permitted fall, smooth through zero.
-                limit(fall / (0.95 * want.fall) - 1.0);
+                limit(fall / (OF_FALL * want.fall) - 1.0);
             }
             if want.early > 0.0 {
                 limit(ln(want.early / low.early.max(1e-9)));

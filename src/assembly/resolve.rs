@@ -9,14 +9,14 @@
 
 use super::build::{build, build_exact};
 use super::candidates::Want;
-use super::desk::Desk;
+use super::desk::{self, Desk};
 use super::plan::Ledger;
 use super::polish::{correct, excess};
 use super::resize::Sized;
 use super::slp;
 use crate::cells::Shape;
 use crate::network::bench::Bench;
-use crate::network::measure::{Measured, measure, trim_reference};
+use crate::network::measure::{Measured, PLAIN_FALL, measure, trim_reference};
 use crate::network::probes::{Pool, Probes};
 use crate::network::{Job, Network, corners};
 use crate::spec::Rail;
@@ -25,6 +25,8 @@ use crate::spec::Rail;
 const INSIDE: f64 = 0.9995;
 /// Paper and circuit agree on every limit when a correction moves none by more than this share.
 const AGREED: f64 = 2e-4;
+/// Further rounds for an answer that is not inside its limits after all.
+const EXTRA: usize = 3;
 /// Attempts to draw an exact answer.
 const DRAWINGS: usize = 6;
 /// Excess beyond which another attempt would not help.
@@ -122,7 +124,7 @@ fn solved(
     let mut best: Option<(Vec<Shape>, Measured)> = None;
     let mut inside = INSIDE;
     let mut radius = pace.radius;
-    for round in 0..=pace.rounds + 1 {
+    for round in 0..=pace.rounds + EXTRA {
         let shapes = desk.shapes();
         let mut network = build_exact(job, plan, &shapes)?;
         trim_reference(job, &mut network).ok()?;
@@ -134,7 +136,7 @@ fn solved(
                 break;
             }
             // Nearly there: a little more room, as for a drawing.
-            if round > pace.rounds || over > HOPELESS {
+            if round == pace.rounds + EXTRA || over > HOPELESS {
                 return None;
             }
             inside -= 1.0 - INSIDE;
@@ -180,22 +182,34 @@ fn solved(
 }
 
 /// Moves the limits on paper so that paper and whole circuit agree where they stand, `inside` of the
-/// spec's. Output resistances are set by what paper and circuit say of the same leg: a start far
+/// spec's. Output resistances and falls are set by what paper and circuit say of the same leg: a start far
 /// outside a stepped limit must not be taken for a paper that is wrong by as much.
 fn calibrate(desk: &mut Desk, measured: &Measured, inside: f64) {
     correct(desk, measured, 1.0, inside);
     for (k, output) in desk.ledger.job.spec.outputs.iter().enumerate() {
-        let Some(least) = output.output_resistance else {
-            continue;
-        };
         let member = &desk.plan.members[desk.plan.legs[k]];
         let rail = member.rail as usize;
-        let low = desk.pool.probes[rail].index(output.range.least.0);
-        let paper = desk.pool.shapes[rail][member.candidate].probes[low].early;
-        let circuit = measured.worst[k].resistance * desk.wants[k].current;
-        if circuit.is_finite() && circuit > 0.0 && paper > 0.0 {
-            let asked = least.0 * desk.wants[k].current;
-            desk.wants[k].early = asked * (paper / circuit) / inside;
+        let probe = |volts: f64| {
+            let index = desk.pool.probes[rail].index(volts);
+            &desk.pool.shapes[rail][member.candidate].probes[index]
+        };
+        let low = probe(output.range.least.0);
+        let worst = &measured.worst[k];
+        if let Some(least) = output.output_resistance {
+            let circuit = worst.resistance * desk.wants[k].current;
+            if circuit.is_finite() && circuit > 0.0 && low.early > 0.0 {
+                let asked = least.0 * desk.wants[k].current;
+                desk.wants[k].early = asked * (low.early / circuit) / inside;
+            }
+        }
+        if worst.limit.is_none() {
+            let middle = probe((output.range.least.0 + output.range.most.0) / 2.0);
+            let paper = 1.0 - (1.0 + low.error[0]) / (1.0 + middle.error[0]);
+            // Far from the limit the two say little about each other.
+            if paper > 0.3 * PLAIN_FALL && worst.fall > 0.3 * PLAIN_FALL {
+                let fall = PLAIN_FALL * inside * (paper / worst.fall);
+                desk.wants[k].fall = fall / desk::OF_FALL;
+            }
         }
     }
     desk.renew();

@@ -791,6 +791,7 @@ fn page(outcome: &Outcome) -> Markup {
                     }
                     @if let Some(proof) = &outcome.proof { (bounds(outcome, proof)) }
                     @if let Some(prices) = &outcome.prices { (price_list(prices)) }
+                    @if let Some(why) = words::no_prices(outcome) { p.note { (why) } }
                     (spec(outcome))
                     (work(outcome))
                     section #cautions {

@@ -53,6 +53,10 @@ pub fn summary(outcome: &Outcome, width: usize) -> String {
             paragraph(&mut text, &words::slack(prices, &slack), 0);
         }
     }
+    if let Some(why) = words::no_prices(outcome) {
+        text.push('\n');
+        paragraph(&mut text, why, 0);
+    }
     let broken = words::broken(outcome);
     if !broken.is_empty() {
         text.push('\n');

@@ -215,6 +215,18 @@ pub fn advice_title(why: &Explanation) -> &'static str {
     }
 }
 
+/// Why a front has no prices, as one sentence; `None` where it has, or where there is no front.
+pub fn no_prices(outcome: &Outcome) -> Option<&'static str> {
+    match outcome.status {
+        _ if outcome.prices.is_some() || outcome.front.is_empty() => None,
+        Status::Interrupted => Some("Stopped before the limits were priced."),
+        _ => Some(
+            "The limits have no prices: the sizes of the network to be priced did not come to rest \
+             within them.",
+        ),
+    }
+}
+
 /// Which network is priced and why, and how.
 pub fn prices_of(prices: &Prices) -> String {
     let rank = prices.rank;
@@ -339,7 +351,8 @@ pub fn price_sentence(prices: &Prices, price: &LimitPrice) -> String {
 
 /// ", free to 0.243 V": how far a limit tightens for nothing; empty where it does not.
 fn free(price: &LimitPrice) -> String {
-    if price.free == price.value {
+    // Less than that is what drawing on the grid happened to leave.
+    if (price.free - price.value).abs() < 0.3 * (price.tighter.to - price.value).abs() {
         return String::new();
     }
     format!(", free to {}", limit(price.free, price.limit.unit()))
