@@ -226,7 +226,10 @@ impl<'s, 'a> Search<'s, 'a> {
             if self.stopped() {
                 return best;
             }
-            if best.score >= before * (1.0 - 1e-4) && !self.refeed(&mut best) {
+            if best.score >= before * (1.0 - 1e-4)
+                // Dear, and of most use where nothing fits yet.
+                && (best.price.excess == 0.0 || !self.refeed(&mut best))
+            {
                 return best;
             }
         }

@@ -1,5 +1,6 @@
 //! The command line, end to end: the program is run as a user runs it.
 
+mod audit;
 mod check;
 mod explore;
 mod faults;
