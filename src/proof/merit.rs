@@ -201,12 +201,15 @@ impl<'a> Gauge<'a> {
     }
 }
 
+/// Hears of a variance as a function of the climate.
+type Reader<'r> = dyn FnMut(&dyn Fn(usize) -> f64) + 'r;
+
 /// Climate of the largest mismatch, and how much smaller variance can be at each of the others.
 pub fn calibrate(job: &Job, pool: &Pool) -> (usize, Vec<f64>) {
     let n = climates(job).len();
     let mut votes = vec![0usize; n];
     let lane = |m: &Lanes, c: usize| m.0[c % 8];
-    let each = |solved: &Solved, f: &mut dyn FnMut(&dyn Fn(usize) -> f64)| {
+    let each = |solved: &Solved, f: &mut Reader| {
         let groups = solved.groups();
         for p in 0..solved.probes.len() {
             let at = &solved.lanes[p * groups..(p + 1) * groups];

@@ -140,6 +140,9 @@ const NARROW: [(&str, bool); 6] = [
     ("margin", true),
 ];
 
+/// Place of the gap among the narrow columns: where even those are too wide it goes below.
+const GAP: usize = 2;
+
 fn table(outcome: &Outcome, networks: &[view::Shown<'_>], width: usize) -> String {
     let rows: Vec<[String; WIDE.len()]> = networks.iter().map(|n| row(outcome, n)).collect();
     let mut lines = vec![WIDE.map(|(name, _)| name.to_owned()).to_vec()];
@@ -148,23 +151,41 @@ fn table(outcome: &Outcome, networks: &[view::Shown<'_>], width: usize) -> Strin
     if wide.lines().all(|line| line.chars().count() <= width) {
         return wide;
     }
-    let mut lines = vec![NARROW.map(|(name, _)| name.to_owned()).to_vec()];
-    lines.extend(
-        rows.iter()
-            .map(|[rank, area, gap, overhead, error, _, margin, _]| {
-                [rank, area, gap, overhead, error, margin]
-                    .map(String::clone)
-                    .to_vec()
-            }),
-    );
-    let narrow = columns(&lines, None, &NARROW.map(|(_, right)| right));
+    let narrow = |with_gap: bool| {
+        let cut = |cells: [String; NARROW.len()]| -> Vec<String> {
+            let all = cells.into_iter().enumerate();
+            all.filter(|(i, _)| with_gap || *i != GAP)
+                .map(|(_, c)| c)
+                .collect()
+        };
+        let mut lines = vec![cut(NARROW.map(|(name, _)| name.to_owned()))];
+        lines.extend(
+            rows.iter()
+                .map(|[rank, area, gap, overhead, error, _, margin, _]| {
+                    cut([rank, area, gap, overhead, error, margin].map(String::clone))
+                }),
+        );
+        columns(&lines, None, &vec![true; lines[0].len()])
+    };
+    let fits = |text: &str| text.lines().all(|line| line.chars().count() <= width);
+    let (narrow, gap_below) = match narrow(true) {
+        text if fits(&text) => (text, false),
+        _ => (narrow(false), true),
+    };
     let mut text = String::new();
     for (index, line) in narrow.lines().enumerate() {
         text.push_str(line);
         text.push('\n');
         // The header and its rule come first.
-        if let Some([.., at, _, cells]) = index.checked_sub(2).and_then(|index| rows.get(index)) {
-            let detail = format!("error at {at}; cells: {cells}");
+        if let Some([_, _, gap, .., at, _, cells]) =
+            index.checked_sub(2).and_then(|index| rows.get(index))
+        {
+            let gap = if gap_below {
+                format!("gap {gap}; ")
+            } else {
+                String::new()
+            };
+            let detail = format!("{gap}error at {at}; cells: {cells}");
             for line in words::wrap(&detail, width - 6) {
                 text.push_str(&format!("      {line}\n"));
             }
