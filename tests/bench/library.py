@@ -44,17 +44,18 @@ TIMES = 100
 NEARLY = 2e-3  # excess that our search leaves to its polish
 
 
-def built(*wanted):
-    """Path of a program that cargo builds."""
+def built(name, *wanted):
+    """Path of the program `name`, which cargo builds, perhaps among others."""
     done = subprocess.run(["cargo", *wanted, "--message-format=json"], cwd=ROOT, check=True,
                           stdout=subprocess.PIPE, text=True)
     lines = map(json.loads, done.stdout.splitlines())
-    return [line["executable"] for line in lines if line.get("executable")][-1]
+    return next(line["executable"] for line in lines
+                if line.get("executable") and line["target"]["name"] == name)
 
 
 def ours(spec, threads):
     """Points of our front, and the user CPU seconds they took."""
-    program = built("build", "--release")
+    program = built("biasloom", "build", "--release", "--bin", "biasloom")
     with tempfile.TemporaryDirectory() as folder:
         before = resource.getrusage(resource.RUSAGE_CHILDREN).ru_utime
         subprocess.run([program, "explore", str(spec), "--threads", str(threads), "--quiet",
@@ -71,7 +72,7 @@ class Evaluator:
 
     def __init__(self, spec, threads, families):
         self.process = subprocess.Popen(
-            [built("bench", "--no-run", "--bench", "price"), str(spec),
+            [built("price", "bench", "--no-run", "--bench", "price"), str(spec),
              "--threads", str(threads), "--families", str(families)],
             stdin=subprocess.PIPE, stdout=subprocess.PIPE, text=True)
         self.about = json.loads(self.process.stdout.readline())
