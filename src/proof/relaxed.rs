@@ -230,7 +230,8 @@ impl Relaxed {
                     leader: None,
                     line: bare.line,
                     density: bare.density,
-                    copies: order.len().max(1) as f64,
+                    // Below each of them some output is served, and every output only once.
+                    copies: wants.len() as f64,
                     serves: Vec::new(),
                 });
             }
@@ -337,12 +338,13 @@ impl Relaxed {
     /// Area of the leg that feeds a family with `current` from a family of a kind.
     #[inline(always)]
     fn feeder(&self, rail: usize, label: &Label, low: f64, current: f64) -> f64 {
-        // The largest unit that makes the leg, and no larger than the leader's own current.
-        let most = current * (1.0 + LINE);
-        let largest = label.leader.map_or(most, |g| {
-            (self.amps[g] * (1.0 + self.tolerances[g].min(1.0))).min(most)
+        // As few units as may be: none larger than the leader's own current. Whole units may leave
+        // the leg short of its current by as much as a line may err.
+        let largest = label.leader.map_or(current, |g| {
+            (self.amps[g] * (1.0 + self.tolerances[g].min(1.0))).min(current)
         });
-        self.leg(rail, low * largest, (current / largest).max(1.0))
+        let units = current / largest;
+        self.leg(rail, low * current * (1.0 - LINE) / units, units)
     }
 
     /// What children can bring to a family, by level of its gate line.
