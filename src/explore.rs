@@ -104,8 +104,7 @@ fn prove(job: &Job, pool: &Pool, front: &[NetworkReport], work: &mut Work) -> Op
     let prover = proof::Prover::new(job, pool)?;
     work.dc_solutions += prover.solutions;
     let figure = |network: &NetworkReport, name: &str| {
-        let found = network.figures.iter().find(|f| f.name == name);
-        found.map_or(f64::INFINITY, |f| f.value)
+        network.figure(name).map_or(f64::INFINITY, |f| f.value)
     };
     let networks: Vec<(f64, f64)> = front
         .iter()
@@ -379,11 +378,7 @@ fn finish(
         trade
             .iter()
             .map(|f| {
-                let value = r
-                    .figures
-                    .iter()
-                    .find(|v| v.name == f.name())
-                    .map_or(0.0, |v| v.value);
+                let value = r.figure(f.name()).map_or(0.0, |v| v.value);
                 match f.better() {
                     figures::Better::Less => value,
                     figures::Better::More => -value,
@@ -449,11 +444,7 @@ fn choose(job: &Job, points: &[Vec<f64>]) -> Option<(usize, Chosen)> {
 }
 
 fn area_of(report: &NetworkReport) -> f64 {
-    report
-        .figures
-        .iter()
-        .find(|f| f.name == "area")
-        .map_or(f64::INFINITY, |f| f.value)
+    report.figure("area").map_or(f64::INFINITY, |f| f.value)
 }
 
 /// How far a broken limit is exceeded, as a share of it.

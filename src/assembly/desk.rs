@@ -11,10 +11,10 @@ use crate::numeric::scalar::{exp, ln};
 use crate::spec::Rail;
 use std::collections::BTreeMap;
 
-/// The paper model with shapes of its own: one slot per member.
 /// How far inside an error limit a descent aims: what straight lines miss, and a snapped length.
-const MARGIN: f64 = 5e-4;
+const INSIDE: f64 = 5e-4;
 
+/// The paper model with shapes of its own: one slot per member.
 /// Share of a permitted fall that a descent aims at.
 pub(super) const OF_FALL: f64 = 0.95;
 
@@ -197,7 +197,7 @@ impl<'l, 'a> Desk<'l, 'a> {
         let mut limits: Vec<(usize, f64)> = clerk
             .every_share(&self.plan, &tally)
             .iter()
-            .map(|(thing, share)| (*thing, ln(share.max(1e-6)) + MARGIN))
+            .map(|(thing, share)| (*thing, ln(share.max(1e-6)) + INSIDE))
             .collect();
         let mut thing = 2 * self.wants.len();
         let mut limit = |value: f64| {
@@ -246,9 +246,14 @@ impl<'l, 'a> Desk<'l, 'a> {
     }
 }
 
+/// Least margin of a cascoded mirror device beyond its closed-form saturation voltage, V.
+pub(crate) const MARGIN: f64 = -0.05;
+/// Least voltage across a degeneration resistor, V.
+pub(crate) const DROP: f64 = 0.01;
+
 /// Continuous variables of a shape, each of order one per factor e (lengths, inversions) or per
 /// 100 mV (drops).
-pub(super) fn variables(shape: &Shape) -> Vec<f64> {
+pub(crate) fn variables(shape: &Shape) -> Vec<f64> {
     let parts = CELLS[shape.cell].parts();
     let mut x = vec![ln(shape.length), ln(shape.inversion)];
     if parts.cascode {
@@ -260,7 +265,8 @@ pub(super) fn variables(shape: &Shape) -> Vec<f64> {
     x
 }
 
-pub(super) fn shape_of(like: &Shape, x: &[f64]) -> Shape {
+/// The shape of some variables, otherwise like another.
+pub(crate) fn shape_of(like: &Shape, x: &[f64]) -> Shape {
     let parts = CELLS[like.cell].parts();
     let mut shape = *like;
     let mut x = x.iter().copied();
@@ -274,7 +280,7 @@ pub(super) fn shape_of(like: &Shape, x: &[f64]) -> Shape {
     if parts.drop {
         // A cascode's mirror device may be given a little less than its closed-form saturation
         // voltage; a degeneration resistor must be there.
-        let least = if parts.cascode { -0.05 } else { 0.01 };
+        let least = if parts.cascode { MARGIN } else { DROP };
         shape.drop = (next() / 10.0).max(least);
     }
     shape

@@ -6,7 +6,7 @@ pub mod alone;
 pub mod build;
 pub mod candidates;
 pub mod columns;
-mod desk;
+pub(crate) mod desk;
 pub mod improve;
 pub mod master;
 pub mod milp;

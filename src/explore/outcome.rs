@@ -44,7 +44,7 @@ impl Proof {
     /// How much more area than the smallest possible a network of the front has at most, fraction;
     /// infinite where nothing is proved.
     pub fn gap(&self, network: &NetworkReport) -> f64 {
-        let area = network.figures.iter().find(|f| f.name == "area");
+        let area = network.figure("area");
         match (area, self.bounds.get(network.rank.wrapping_sub(1))) {
             (Some(area), Some(bound)) if bound.area > 0.0 => area.value / bound.area - 1.0,
             _ => f64::INFINITY,
@@ -105,6 +105,13 @@ pub struct NetworkReport {
     pub deck: DeckSource,
     /// Limits this network breaks (empty on the front).
     pub broken: Vec<Broken>,
+}
+
+impl NetworkReport {
+    /// A figure by name.
+    pub fn figure(&self, name: &str) -> Option<&FigureValue> {
+        self.figures.iter().find(|f| f.name == name)
+    }
 }
 
 /// One figure of merit of a network.

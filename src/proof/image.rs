@@ -1,5 +1,5 @@
-//! Real networks as the relaxed problem sees them: where the ascent of its prices starts, and how
-//! its claim to cost no more is tested.
+//! Real networks as the relaxed problem sees them: the mapping that a bound rests on, by which its
+//! claim to cost no more is tested.
 
 use super::merit::Gauge;
 use super::relaxed::{Column, Real, Relaxed};

@@ -15,6 +15,7 @@
 //! a test draws a million random shapes per cell and finds none below.
 
 use crate::assembly::candidates::Want;
+use crate::assembly::desk;
 use crate::cells::solved::{Climate, Solved, Solver};
 use crate::cells::{CELLS, Shape};
 use crate::network::Job;
@@ -63,8 +64,8 @@ pub struct Merits {
     pub outputs: Vec<Option<Merit>>,
     /// Per rail: a family that only feeds.
     pub bare: [Option<Merit>; 2],
-    /// Shapes solved.
-    pub evaluations: u64,
+    /// DC solutions spent.
+    pub solutions: u64,
 }
 
 /// One rail's yardstick: how a solved shape is read.
@@ -242,19 +243,6 @@ pub fn calibrate(job: &Job, pool: &Pool) -> (usize, Vec<f64>) {
     (tracked, ratios)
 }
 
-/// Continuous variables of a shape and back.
-fn variables(shape: &Shape) -> Vec<f64> {
-    let parts = CELLS[shape.cell].parts();
-    let mut x = vec![ln(shape.length), ln(shape.inversion)];
-    if parts.cascode {
-        x.extend([ln(shape.cascode_length), ln(shape.cascode_inversion)]);
-    }
-    if parts.drop {
-        x.push(shape.drop * 10.0);
-    }
-    x
-}
-
 /// A descent of one mark of one output.
 struct Descent<'d, 'a> {
     gauge: &'d Gauge<'a>,
@@ -283,29 +271,26 @@ impl CostFunction for Descent<'_, '_> {
 /// Least and largest inversion coefficient of the declared design space.
 pub const INVERSION: [f64; 2] = [0.01, 100.0];
 /// Least voltage across a degeneration resistor, V.
-pub const DROP: f64 = 0.01;
+pub const DROP: f64 = desk::DROP;
 /// Least and largest margin of a cascoded mirror device, V; the larger also bounds a degeneration
 /// resistor's voltage.
-pub const MARGIN: [f64; 2] = [-0.05, 0.6];
+pub const MARGIN: [f64; 2] = [desk::MARGIN, 0.6];
 
 /// The nearest shape of the declared design space.
 fn declared(job: &Job, rail: Rail, like: &Shape, x: &[f64]) -> Shape {
     let length = job.tech(rail).mosfet().length;
     let parts = CELLS[like.cell].parts();
-    let mut shape = *like;
-    let within = |l: f64| exp(l).clamp(length.least.0, length.most.0);
-    let inverted = |i: f64| exp(i).clamp(INVERSION[0], INVERSION[1]);
-    shape.length = within(x[0]);
-    shape.inversion = inverted(x[1]);
-    let mut at = 2;
+    let within = |l: f64| l.clamp(length.least.0, length.most.0);
+    let inverted = |i: f64| i.clamp(INVERSION[0], INVERSION[1]);
+    let mut shape = desk::shape_of(like, x);
+    shape.length = within(shape.length);
+    shape.inversion = inverted(shape.inversion);
     if parts.cascode {
-        shape.cascode_length = within(x[2]);
-        shape.cascode_inversion = inverted(x[3]);
-        at = 4;
+        shape.cascode_length = within(shape.cascode_length);
+        shape.cascode_inversion = inverted(shape.cascode_inversion);
     }
     if parts.drop {
-        let least = if parts.cascode { MARGIN[0] } else { DROP };
-        shape.drop = (x[at] / 10.0).clamp(least, MARGIN[1]);
+        shape.drop = shape.drop.min(MARGIN[1]);
     }
     shape
 }
@@ -378,7 +363,7 @@ pub fn merits(job: &Job, pool: &Pool, wants: &[Want]) -> (Merits, usize) {
                             output,
                             mark,
                         };
-                        let x = variables(&start.1);
+                        let x = desk::variables(&start.1);
                         let mut simplex = vec![x.clone()];
                         for i in 0..x.len() {
                             let mut y = x.clone();
@@ -416,7 +401,7 @@ pub fn merits(job: &Job, pool: &Pool, wants: &[Want]) -> (Merits, usize) {
             (Some(merit), evaluations)
         })
         .collect();
-    let evaluations = found.iter().map(|f| f.1).sum();
+    let solutions = found.iter().map(|f| f.1).sum();
     let mut outputs: Vec<Option<Merit>> = found.into_iter().map(|f| f.0).collect();
     let source = outputs.pop().flatten();
     let sink = outputs.pop().flatten();
@@ -424,7 +409,7 @@ pub fn merits(job: &Job, pool: &Pool, wants: &[Want]) -> (Merits, usize) {
         Merits {
             outputs,
             bare: [sink, source],
-            evaluations,
+            solutions,
         },
         tracked,
     )

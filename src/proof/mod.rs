@@ -110,7 +110,7 @@ impl Prover {
                 line_error: merit::LINE,
                 paper: relaxed::PAPER,
             },
-            solutions: merits.evaluations,
+            solutions: merits.solutions,
         })
     }
 
@@ -144,11 +144,14 @@ impl Prover {
             start = prices.clone();
             found.push(prices);
         }
+        // What roots cost does not hang on the budget: one pass per prices serves every network.
+        let roots: Vec<f64> = found.iter().map(|p| self.relaxed.root_cost(p)).collect();
         networks
             .iter()
             .map(|&(overhead, _)| {
-                let certificates = found.iter().map(|p| self.certificate(p, overhead));
-                certificates
+                let priced = found.iter().zip(&roots);
+                priced
+                    .map(|(prices, &roots)| certificate(prices, roots, overhead))
                     .reduce(|a, b| if b.area > a.area { b } else { a })
                     .expect("there are prices for every network")
             })
@@ -157,15 +160,16 @@ impl Prover {
 
     /// What prices prove at an overhead current, A.
     pub fn certificate(&self, prices: &Prices, overhead: f64) -> Certificate {
-        let area = self
-            .relaxed
-            .certify(prices, overhead * (1.0 + CORNERS))
-            .max(0.0);
-        Certificate {
-            area,
-            overhead,
-            output_prices: prices.outputs.clone(),
-            overhead_price: prices.overhead,
-        }
+        certificate(prices, self.relaxed.root_cost(prices), overhead)
+    }
+}
+
+/// What prices prove at an overhead current, where roots cost so much.
+fn certificate(prices: &Prices, roots: f64, overhead: f64) -> Certificate {
+    Certificate {
+        area: Relaxed::bound(prices, roots, overhead * (1.0 + CORNERS)).max(0.0),
+        overhead,
+        output_prices: prices.outputs.clone(),
+        overhead_price: prices.overhead,
     }
 }

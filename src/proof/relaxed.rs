@@ -110,7 +110,6 @@ pub struct Real {
 struct Layer {
     tables: [Vec<Vec<(f64, u32, u32)>>; 2],
     feeds: Vec<f64>,
-    prices: Vec<f64>,
 }
 
 /// A kind of family on one rail: its most demanding output, or none.
@@ -306,9 +305,9 @@ impl Relaxed {
         }
     }
 
-    /// Index of a feed in [`Prices::feeds`].
+    /// Place of a feed in a list of all.
     #[inline(always)]
-    pub fn index(&self, feed: &Feed) -> usize {
+    fn index(&self, feed: &Feed) -> usize {
         let (c, v) = (self.currents.len(), self.levels.values.len());
         let before = if feed.rail == 1 {
             self.labels[0].len()
@@ -319,20 +318,10 @@ impl Relaxed {
     }
 
     /// Feeds in all.
-    pub fn feeds(&self) -> usize {
+    fn feeds(&self) -> usize {
         (self.labels[0].len() + self.labels[1].len())
             * self.currents.len()
             * self.levels.values.len()
-    }
-
-    /// Levels in all.
-    pub fn levels(&self) -> usize {
-        self.levels.values.len()
-    }
-
-    /// Copies of the reference.
-    pub fn roots(&self) -> f64 {
-        self.roots as f64
     }
 
     /// Area of the leg that feeds a family with `current` from a family of a kind.
@@ -450,12 +439,17 @@ impl Relaxed {
         best
     }
 
-    /// The bound that prices of outputs and of overhead current prove by themselves: what feeds
-    /// are worth follows from the leaves up (dynamic programming over chains of at most
-    /// [`DEPTH`] families).
-    pub fn certify(&self, prices: &Prices, budget: f64) -> f64 {
+    /// What all roots together cost at least at given prices: what feeds are worth follows from the
+    /// leaves up (dynamic programming over chains of at most [`DEPTH`] families).
+    pub fn root_cost(&self, prices: &Prices) -> f64 {
         let layers = self.climb(prices);
-        self.value(prices, budget, self.root_cost(&layers[layers.len() - 1]))
+        self.roots_of(&layers[layers.len() - 1])
+    }
+
+    /// The bound that prices prove for an overhead current of at most `budget` ampere, once it is
+    /// known what roots cost at these prices.
+    pub fn bound(prices: &Prices, roots: f64, budget: f64) -> f64 {
+        prices.outputs.iter().sum::<f64>() - prices.overhead * budget + roots
     }
 
     /// The bound and the relaxed networks it stands on, one per kind of root: each a plane that no
@@ -468,27 +462,20 @@ impl Relaxed {
         let mut known = BTreeMap::new();
         let trees = (0..self.labels[rail].len())
             .filter(|&l| layers[top].tables[rail][l][slots].0.is_finite())
-            .map(|l| self.tree(&layers, top, rail, l, slots, &mut known))
+            .map(|l| self.tree(&layers, top, rail, l, slots, prices, &mut known))
             .collect();
-        (
-            self.value(prices, budget, self.root_cost(&layers[top])),
-            trees,
-        )
+        let bound = Relaxed::bound(prices, self.roots_of(&layers[top]), budget);
+        (bound, trees)
     }
 
-    fn value(&self, prices: &Prices, budget: f64, root: f64) -> f64 {
-        prices.outputs.iter().sum::<f64>() - prices.overhead * budget
-            + root
-            + (self.roots as f64 - 1.0) * root.min(0.0)
-    }
-
-    fn root_cost(&self, layer: &Layer) -> f64 {
+    fn roots_of(&self, layer: &Layer) -> f64 {
         let slots = self.currents.len() * self.levels.values.len();
         let tables = &layer.tables[self.root as usize];
-        tables
+        let least = tables
             .iter()
             .map(|t| t[slots].0)
-            .fold(f64::INFINITY, f64::min)
+            .fold(f64::INFINITY, f64::min);
+        least + (self.roots as f64 - 1.0) * least.min(0.0)
     }
 
     /// From the leaves up: chains of one family, of two, and so on.
@@ -522,7 +509,6 @@ impl Relaxed {
             layers.push(Layer {
                 tables,
                 feeds: std::mem::replace(&mut feeds, next),
-                prices: prices.outputs.clone(),
             });
             if settled {
                 break;
@@ -532,6 +518,7 @@ impl Relaxed {
     }
 
     /// The tree from a state on.
+    #[allow(clippy::too_many_arguments)]
     fn tree(
         &self,
         layers: &[Layer],
@@ -539,6 +526,7 @@ impl Relaxed {
         rail: usize,
         l: usize,
         slot: usize,
+        prices: &Prices,
         known: &mut BTreeMap<(usize, usize, usize, usize), Tree>,
     ) -> Tree {
         if let Some(tree) = known.get(&(depth, rail, l, slot)) {
@@ -552,7 +540,14 @@ impl Relaxed {
         } else {
             (slot / levels, slot % levels)
         };
-        let family = self.column(rail, l, i, j, d as usize, n as usize, &layers[depth]);
+        let family = self.column(
+            rail,
+            l,
+            [i, j],
+            [d as usize, n as usize],
+            prices,
+            &layers[depth].feeds,
+        );
         let mut tree = Tree {
             area: family.area,
             overhead: self.currents[i],
@@ -568,6 +563,7 @@ impl Relaxed {
                 feed.rail,
                 feed.kind,
                 feed.current * levels + feed.level,
+                prices,
                 known,
             );
             tree.area += times * below.area;
@@ -653,17 +649,16 @@ impl Relaxed {
         Some((area, most))
     }
 
-    /// The family behind a state of a layer.
-    #[allow(clippy::too_many_arguments)]
+    /// The family behind a state (current and level of its feed) with a step of density and an
+    /// index of units, where feeds are worth so much.
     fn column(
         &self,
         rail: usize,
         l: usize,
-        i: usize,
-        j: usize,
-        d: usize,
-        n: usize,
-        layer: &Layer,
+        [i, j]: [usize; 2],
+        [d, n]: [usize; 2],
+        prices: &Prices,
+        feeds: &[f64],
     ) -> Column {
         let label = &self.labels[rail][l];
         let (low, high) = (self.densities[d].max(label.density), self.upper(d));
@@ -678,7 +673,7 @@ impl Relaxed {
         for (p, item) in label.serves.iter().enumerate() {
             if let Some((area, most)) = self.leg_of(rail, item, low, high, into, unit)
                 && j <= most
-                && (p == 0 || area < layer.prices[item.output])
+                && (p == 0 || area < prices.outputs[item.output])
             {
                 column.area += area;
                 column.serves.push(item.output);
@@ -698,7 +693,7 @@ impl Relaxed {
                     current: c,
                     level,
                 };
-                let gain = leg - layer.feeds[self.index(&feed)];
+                let gain = leg - feeds[self.index(&feed)];
                 if gain < best.map_or(0.0, |b| b.0) {
                     best = Some((gain, leg, feed));
                 }

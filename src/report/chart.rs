@@ -144,12 +144,15 @@ pub fn front(outcome: &Outcome, width: f64, height: f64, chosen: Option<usize>) 
     let networks = view::networks(outcome);
     let [across, up] = view::axes(outcome);
     let value = |shown: &view::Shown<'_>, name: &str| {
-        view::figure(shown.network, name).map_or(f64::NAN, |figure| figure.value)
+        shown
+            .network
+            .figure(name)
+            .map_or(f64::NAN, |figure| figure.value)
     };
     let unit = |name: &str| {
         let mut figures = networks
             .iter()
-            .filter_map(|shown| view::figure(shown.network, name));
+            .filter_map(|shown| shown.network.figure(name));
         figures
             .next()
             .map_or(String::new(), |figure| figure.unit.clone())

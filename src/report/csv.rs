@@ -55,7 +55,7 @@ fn render(outcome: &Outcome) -> Files {
         ];
         for (name, unit) in &names {
             let scale = format::column_unit(unit).0;
-            let value = view::figure(network, name).map(|figure| figure.value * scale);
+            let value = network.figure(name).map(|figure| figure.value * scale);
             row.push(value.map(format::number).unwrap_or_default());
         }
         match view::worst_error(network) {

@@ -4,7 +4,7 @@
 //! in SI base units (m, m2, A, V, Ohm, W, K) and fractions for errors. Every key is always there;
 //! what does not apply is `null`.
 
-use super::{Files, Format, view, words};
+use super::{Files, Format, words};
 use crate::explore::{
     Advice, Broken, Change, Chosen, DeviceRow, Explanation, FamilyReport, FigureValue, LimitPrice,
     NetworkReport, Outcome, OutputReport, Prices, Proof, Status, Step, Verdict,
@@ -923,9 +923,8 @@ impl From<&Broken> for BrokenLimit {
 impl From<&Explanation> for Why {
     fn from(why: &Explanation) -> Why {
         let changes = |list: &[Change]| list.iter().map(ChangedLimit::from).collect();
-        let figure = |advice: &Advice, name: &str| {
-            optional(view::figure(&advice.network, name).map(|f| f.value))
-        };
+        let figure =
+            |advice: &Advice, name: &str| optional(advice.network.figure(name).map(|f| f.value));
         Why {
             impossible: why
                 .impossible

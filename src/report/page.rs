@@ -170,7 +170,7 @@ impl Network {
         let network = shown.network;
         let stem = shown.stem();
         let values = figures.iter().map(|figure| {
-            let value = view::figure(network, &figure.name).map(|figure| figure.value);
+            let value = network.figure(&figure.name).map(|figure| figure.value);
             value.filter(|value| value.is_finite())
         });
         let current = format::engineering(outcome.spec.reference.current().0, "A");
@@ -331,7 +331,7 @@ fn times(count: u32) -> String {
 }
 
 fn figure_text(network: &NetworkReport, name: &str) -> String {
-    view::figure(network, name).map_or("-".to_owned(), |figure| {
+    network.figure(name).map_or("-".to_owned(), |figure| {
         print(format::quantity(figure.value, &figure.unit))
     })
 }

@@ -197,7 +197,7 @@ fn table(outcome: &Outcome, networks: &[view::Shown<'_>], width: usize) -> Strin
 fn row(outcome: &Outcome, shown: &view::Shown<'_>) -> [String; WIDE.len()] {
     let network = shown.network;
     let figure = |name: &str| {
-        view::figure(network, name).map_or("-".to_owned(), |figure| {
+        network.figure(name).map_or("-".to_owned(), |figure| {
             format::quantity(figure.value, &figure.unit)
         })
     };

@@ -1,9 +1,7 @@
 //! What several formats pick out of an [`Outcome`]: which networks to show under which file
 //! name, and the worst values among what is already there. Nothing is computed anew.
 
-use crate::explore::{
-    FigureValue, LimitPrice, NetworkReport, Outcome, OutputReport, Prices, Verdict,
-};
+use crate::explore::{LimitPrice, NetworkReport, Outcome, OutputReport, Prices, Verdict};
 
 /// A network to show, with the stem of its files.
 #[derive(Debug, Clone, Copy)]
@@ -73,11 +71,6 @@ pub fn networks(outcome: &Outcome) -> Vec<Shown<'_>> {
             })
             .collect()
     }
-}
-
-/// A figure of a network by name.
-pub fn figure<'a>(network: &'a NetworkReport, name: &str) -> Option<&'a FigureValue> {
-    network.figures.iter().find(|figure| figure.name == name)
 }
 
 /// Names and units of all figures that the networks carry, in the order of first sight.

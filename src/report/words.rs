@@ -157,9 +157,12 @@ pub fn advice(advice: &Advice) -> String {
         .map(|c| format!("{} (from {})", change(c), limit(c.from, &c.unit)))
         .collect();
     let figure = |name: &str| {
-        view::figure(&advice.network, name).map_or("-".to_owned(), |figure| {
-            format::quantity(figure.value, &figure.unit)
-        })
+        advice
+            .network
+            .figure(name)
+            .map_or("-".to_owned(), |figure| {
+                format::quantity(figure.value, &figure.unit)
+            })
     };
     format!(
         "{}: a network of {} at {} of overhead current.",

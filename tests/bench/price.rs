@@ -11,6 +11,8 @@
 //! Genes that make no network are repaired: a family nothing hangs on is left out, a feed from a
 //! family that is not there goes to one that is.
 
+mod spec_file;
+
 use biasloom::assembly::build::{build, shapes};
 use biasloom::assembly::candidates::{Candidate, Want, wants};
 use biasloom::assembly::columns::Feeds;
@@ -18,15 +20,13 @@ use biasloom::assembly::plan::{Clerk, Ledger, Member, Plan, Tally};
 use biasloom::assembly::polish::excess;
 use biasloom::cells::solved::{Climate, Solved, Solver};
 use biasloom::cells::{CELLS, Shape};
-use biasloom::figures::FIGURES;
 use biasloom::network::Job;
 use biasloom::network::bench::Bench;
 use biasloom::network::corners::{climates, verified};
 use biasloom::network::measure::{measure, trim_reference};
 use biasloom::network::probes::{Pool, Probes};
 use biasloom::numeric::scalar::{exp, ln};
-use biasloom::process::{self, Card};
-use biasloom::spec::{self, CardFacts, Rail, Spec, Vocabulary};
+use biasloom::spec::Rail;
 use rayon::prelude::*;
 use std::collections::{BTreeSet, HashMap};
 use std::io::{BufRead, Write};
@@ -376,27 +376,6 @@ impl<'a> Shelf<'a> {
     }
 }
 
-/// A spec with its card.
-fn load(path: &str) -> (Spec, Card) {
-    let text = std::fs::read_to_string(path).expect("a spec that can be read");
-    let figures: Vec<&str> = FIGURES.iter().map(|f| f.name()).collect();
-    let cards = process::shipped_names();
-    let vocabulary = Vocabulary {
-        figures: &figures,
-        cards: &cards,
-    };
-    let located = spec::read(&text, path, path, &vocabulary).expect("a sound spec");
-    let card = Card::load(&located.spec.card).expect("a shipped card");
-    let facts = CardFacts {
-        name: card.name.clone(),
-        corners: card.corners.iter().map(|c| c.name.clone()).collect(),
-        supply_max: card.supply_max,
-        has_resistor: card.resistor.is_some(),
-    };
-    let spec = spec::check_against_card(located, &facts).expect("a spec that suits its card");
-    (spec, card)
-}
-
 fn encoding(job: Job<'_>, families: usize) -> Encoding<'_> {
     let root = job.spec.reference.rail();
     let wanted = |rail: Rail| job.spec.outputs.iter().filter(|o| o.rail == rail).count();
@@ -450,7 +429,7 @@ fn main() {
         .num_threads(threads)
         .build_global()
         .expect("threads can be started");
-    let (spec, card) = load(path);
+    let (spec, card) = spec_file::load(path);
     let job = Job {
         spec: &spec,
         card: &card,

@@ -1,5 +1,7 @@
 //! Speed of the search, from one shape to a whole spec: `cargo bench --bench search`.
 
+mod spec_file;
+
 use biasloom::assembly::build::{build, shapes};
 use biasloom::assembly::candidates::{Candidate, wants};
 use biasloom::assembly::columns::{Feeds, generate};
@@ -9,16 +11,15 @@ use biasloom::assembly::plan::{Clerk, Ledger, Plan, Tally};
 use biasloom::cells::solved::Solver;
 use biasloom::cells::{CELLS, Shape, index_of};
 use biasloom::explore::{Silent, explore};
-use biasloom::figures::FIGURES;
 use biasloom::network::bench::Bench;
 use biasloom::network::corners::{climates, verified};
 use biasloom::network::measure::measure;
 use biasloom::network::probes::{Pool, Probes};
 use biasloom::network::work::Work;
 use biasloom::network::{Job, Network};
-use biasloom::process::{self, Card};
+use biasloom::process::Card;
 use biasloom::search::pool::sweep;
-use biasloom::spec::{self, CardFacts, Effort, Rail, Spec, Vocabulary};
+use biasloom::spec::{Effort, Rail, Spec};
 use divan::counter::ItemsCount;
 use divan::{Bencher, black_box};
 use std::sync::OnceLock;
@@ -31,22 +32,7 @@ fn main() {
 /// A shipped spec with its card.
 fn shipped(name: &str, effort: Effort) -> (Spec, Card) {
     let path = format!("{}/specs/{name}.yaml", env!("CARGO_MANIFEST_DIR"));
-    let text = std::fs::read_to_string(path).expect("a shipped spec");
-    let figures: Vec<&str> = FIGURES.iter().map(|f| f.name()).collect();
-    let cards = process::shipped_names();
-    let vocabulary = Vocabulary {
-        figures: &figures,
-        cards: &cards,
-    };
-    let located = spec::read(&text, name, name, &vocabulary).expect("it is sound");
-    let card = Card::load(&located.spec.card).expect("a shipped card");
-    let facts = CardFacts {
-        name: card.name.clone(),
-        corners: card.corners.iter().map(|c| c.name.clone()).collect(),
-        supply_max: card.supply_max,
-        has_resistor: card.resistor.is_some(),
-    };
-    let mut spec = spec::check_against_card(located, &facts).expect("it suits its card");
+    let (mut spec, card) = spec_file::load(&path);
     spec.search.effort = effort;
     (spec, card)
 }

@@ -22,7 +22,7 @@ fn close(ours: f64, truth: f64, relative: f64) {
 }
 
 /// One sink of 10 uA from 10 uA, 3 sigma 1 %, from 0.2 V up, at one corner.
-fn one_to_one(card: &str) -> Task {
+pub fn one_to_one(card: &str) -> Task {
     let text = format!(
         "
 card: {card}

@@ -1,6 +1,7 @@
 //! Lower bounds on area: that they hold, for shapes, for families, for networks, for closed forms.
 
 use super::Task;
+use super::outside::one_to_one;
 use biasloom::assembly::candidates::wants;
 use biasloom::assembly::columns::{UNITS, currents};
 use biasloom::assembly::plan::Plan;
@@ -264,17 +265,7 @@ fn any_prices_prove_a_bound_below_every_network() {
 /// the floors, keeps it from being near.
 #[test]
 fn bound_of_a_square_law_mirror_is_below_its_closed_form() {
-    let text = "
-card: textbook-ideal
-supply: 3 V
-temperature: 27 degC
-corners: [TT]
-reference: { current: 10 uA, flows: into network, range: 0 V to 2.5 V }
-outputs:
-  - { name: copy, kind: sink, ratio: 1, range: 0.2 V to 2.5 V, accuracy: 1 % }
-search: { effort: normal }
-";
-    let task = Task::read("one_to_one", text);
+    let task = one_to_one("textbook-ideal");
     let prover = Prover::new(&task.job(), &pool_of(&task)).expect("it can be served");
     let bound = prover.prove(&[(10e-6, 459.3e-12)])[0].area * 1e12;
     assert!(
