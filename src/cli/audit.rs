@@ -61,7 +61,7 @@ impl Audit {
             text.push_str("There is no bound in the file.\n");
         }
         for bound in &file.bounds {
-            if bound.prices.outputs.len() != spec.outputs.len() {
+            if bound.prices.outputs.len() != prover.priced() {
                 return Err(file.fault("is for another spec: it prices another number of outputs"));
             }
             let proved = prover.certificate(&bound.prices, bound.overhead).area;

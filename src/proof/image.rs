@@ -2,11 +2,11 @@
 //! claim to cost no more is tested.
 
 use super::merit::Gauge;
-use super::relaxed::{Column, Real, Relaxed};
+use super::relaxed::{Real, Relaxed};
 use crate::assembly::plan::{Clerk, Ledger, Plan, Tally};
 
-/// The families of a plan. `tracked` is the climate whose variance is followed.
-pub fn families(ledger: &Ledger, plan: &Plan, gauges: &[Gauge; 2], tracked: usize) -> Vec<Real> {
+/// The families of a plan. `ratios` say how variance goes with climate.
+pub fn families(ledger: &Ledger, plan: &Plan, gauges: &[Gauge; 2], ratios: &[f64]) -> Vec<Real> {
     let mut tally = Tally::new();
     Clerk::new(ledger).price(plan, &mut tally);
     plan.members
@@ -19,7 +19,9 @@ pub fn families(ledger: &Ledger, plan: &Plan, gauges: &[Gauge; 2], tracked: usiz
                 root: member.parent.is_none(),
                 into: member.current,
                 units: member.units,
-                variance: tally.lines()[f].variance_at(tracked),
+                variance: (0..ratios.len())
+                    .map(|c| tally.lines()[f].variance_at(c) / ratios[c])
+                    .fold(f64::INFINITY, f64::min),
                 density: gauges[member.rail as usize].density(solved),
                 serves: (0..plan.legs.len())
                     .filter(|&k| plan.legs[k] == f)
@@ -29,9 +31,9 @@ pub fn families(ledger: &Ledger, plan: &Plan, gauges: &[Gauge; 2], tracked: usiz
         .collect()
 }
 
-/// The relaxed families that a plan maps onto; those outside the declared design space are left
-/// out.
-pub fn columns(relaxed: &Relaxed, plan: &Plan, families: &[Real]) -> Vec<Option<Column>> {
+/// Areas of the relaxed families that a plan maps onto; `None` for those outside the declared design
+/// space.
+pub fn areas(relaxed: &Relaxed, plan: &Plan, families: &[Real]) -> Vec<Option<f64>> {
     plan.members
         .iter()
         .enumerate()

@@ -7,6 +7,7 @@
 //! the relaxed networks.
 
 pub mod ascent;
+pub mod exact;
 pub mod image;
 pub mod merit;
 pub mod relaxed;
@@ -16,11 +17,12 @@ use crate::assembly::columns::{UNITS, currents};
 use crate::cells::CELLS;
 use crate::network::Job;
 use crate::network::probes::Pool;
-use crate::numeric::scalar::powf;
 use crate::spec::Effort;
 use relaxed::{Prices, Relaxed, Resolution};
 use serde::Serialize;
 
+/// Most prices of overhead current tried for a network where every output is told apart.
+const STEPS: usize = 12;
 /// What a nominal overhead current may differ from that of the worst corner, fraction.
 const CORNERS: f64 = 0.01;
 
@@ -32,7 +34,8 @@ pub struct Certificate {
     pub area: f64,
     /// Overhead current that may be used, A.
     pub overhead: f64,
-    /// Dual price of serving each output, m^2, in the order of the spec.
+    /// Dual price of serving each output, m^2, in the order of the spec; none where outputs are few
+    /// enough to be told apart.
     pub output_prices: Vec<f64>,
     /// Dual price of overhead current, m^2/A.
     pub overhead_price: f64,
@@ -53,8 +56,10 @@ pub struct Declared {
     pub units: Vec<u32>,
     /// Families in a chain from the reference at most.
     pub depth: usize,
-    /// Largest systematic error of a gate line and of a feeder leg, fraction.
+    /// Largest systematic error of a gate line, as a share of the error limit of an output it serves.
     pub line_error: f64,
+    /// Largest systematic error of a feeder leg, fraction.
+    pub feeder_error: f64,
     /// How much an error on paper may differ from the whole circuit's, as a share of its limit.
     pub paper: f64,
 }
@@ -74,23 +79,23 @@ impl Prover {
     /// shape of the pool.
     pub fn new(job: &Job, pool: &Pool) -> Option<Prover> {
         let wants = wants(job, 1.0);
-        let (per_decade, levels, steps) = match job.spec.search.effort {
-            Effort::Quick => (12.0, 2, 25),
-            Effort::Normal => (16.0, 4, 40),
-            Effort::Thorough => (60.0, 16, 300),
+        let (density, levels, steps) = match (job.spec.search.effort, wants.len()) {
+            (Effort::Thorough, ..=exact::MOST) => (1.01, 300, 0),
+            (_, ..=exact::MOST) => (1.02, 100, 0),
+            (Effort::Quick, _) => (1.25, 8, 20),
+            (Effort::Normal, _) => (1.2, 10, 24),
+            (Effort::Thorough, _) => (1.05, 40, 200),
         };
         let currents = currents(job, &wants, job.spec.overhead_limit());
-        let (merits, _) = merit::merits(job, pool, &wants);
+        // Floors for every density are dear where outputs are many.
+        let merits = merit::merits(job, pool, &wants, wants.len() <= exact::MOST);
         let relaxed = Relaxed::new(
             job,
             &wants,
             &merits,
             &currents,
             &UNITS,
-            Resolution {
-                density: powf(10.0, 1.0 / per_decade),
-                levels,
-            },
+            Resolution { density, levels },
         )?;
         let allowed = CELLS
             .iter()
@@ -108,6 +113,7 @@ impl Prover {
                 units: UNITS.to_vec(),
                 depth: relaxed::DEPTH,
                 line_error: merit::LINE,
+                feeder_error: merit::FEEDER,
                 paper: relaxed::PAPER,
             },
             solutions: merits.solutions,
@@ -117,6 +123,9 @@ impl Prover {
     /// Certificates for networks with these overhead currents (A, at the worst corner) and areas
     /// (m^2): the best prices found for each, shared among them.
     pub fn prove(&self, networks: &[(f64, f64)]) -> Vec<Certificate> {
+        if self.relaxed.is_exact() {
+            return self.prove_exact(networks);
+        }
         let mut planes = Vec::new();
         let mut found: Vec<Prices> = Vec::new();
         let mut start = Prices {
@@ -158,9 +167,74 @@ impl Prover {
             .collect()
     }
 
-    /// What prices prove at an overhead current, A.
+    /// Certificates where every output is told apart: a price of overhead current for each network,
+    /// by cutting planes in one dimension. A plane is the area and the overhead current of a
+    /// relaxed network, and serves every budget.
+    fn prove_exact(&self, networks: &[(f64, f64)]) -> Vec<Certificate> {
+        let mut planes: Vec<(f64, f64)> = Vec::new();
+        networks
+            .iter()
+            .map(|&(overhead, _)| {
+                let budget = overhead * (1.0 + CORNERS);
+                let promise = |planes: &[(f64, f64)], price: f64| {
+                    planes
+                        .iter()
+                        .map(|(area, overhead)| area + price * (overhead - budget))
+                        .fold(f64::INFINITY, f64::min)
+                };
+                let (mut best, mut price) = ((f64::NEG_INFINITY, 0.0), 0.0);
+                for _ in 0..STEPS {
+                    let cheapest = self.relaxed.cheapest(price);
+                    let bound = cheapest.cost - price * budget;
+                    if bound > best.0 {
+                        best = (bound, price);
+                    }
+                    planes.push((cheapest.area, cheapest.overhead));
+                    // The best price by the planes: where two of them meet, or none at all.
+                    let mut places = vec![0.0, 100.0 * cheapest.area / budget];
+                    for (n, a) in planes.iter().enumerate() {
+                        let meets = planes[..n].iter().map(|b| (a.0 - b.0) / (b.1 - a.1));
+                        places.extend(meets.filter(|p| p.is_finite() && *p > 0.0));
+                    }
+                    let next = places
+                        .into_iter()
+                        .map(|place| (promise(&planes, place), place))
+                        .fold(
+                            (f64::NEG_INFINITY, 0.0),
+                            |a, b| if b.0 > a.0 { b } else { a },
+                        );
+                    if next.0 <= best.0 + 1e-4 * best.0.abs() {
+                        break;
+                    }
+                    price = next.1;
+                }
+                Certificate {
+                    area: best.0.max(0.0),
+                    overhead,
+                    output_prices: Vec::new(),
+                    overhead_price: best.1,
+                }
+            })
+            .collect()
+    }
+
+    /// How many outputs have a price: all, or none where they are few enough to be told apart.
+    pub fn priced(&self) -> usize {
+        self.relaxed.priced()
+    }
+
+    /// What prices prove at an overhead current, A. No prices of outputs: each is told apart.
     pub fn certificate(&self, prices: &Prices, overhead: f64) -> Certificate {
-        certificate(prices, self.relaxed.root_cost(prices), overhead)
+        if !prices.outputs.is_empty() {
+            return certificate(prices, self.relaxed.root_cost(prices), overhead);
+        }
+        let cheapest = self.relaxed.cheapest(prices.overhead);
+        Certificate {
+            area: (cheapest.cost - prices.overhead * (overhead * (1.0 + CORNERS))).max(0.0),
+            overhead,
+            output_prices: Vec::new(),
+            overhead_price: prices.overhead,
+        }
     }
 }
 

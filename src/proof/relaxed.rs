@@ -14,13 +14,14 @@
 //!   product (arithmetic and geometric mean), which knows the unit's area only.
 //! - *Coverage.* An output may be served twice or not at all, at a price: the dual prices of the
 //!   rows "every output once" (Lagrangian relaxation; Geoffrion, Mathematical Programming Study 2,
-//!   1974). Overhead current likewise.
+//!   1974). Overhead current likewise. (A handful of outputs needs no prices: [`super::exact`].)
 //!
-//! What remains is a tree, and its least cost follows level by level from the leaves (dynamic
-//! programming). A family may have several children on one input current, but children of one
-//! family differ in their most demanding outputs, since every output sits in one family.
+//! What remains is a tree, and its least cost follows from the leaves up (dynamic programming). A
+//! subtree is known by its *first* output, in a fixed order: children of one family have different
+//! first outputs, and serve no output before their own first one, because every output sits in one
+//! family only. The first output of all is in every network, and in a relaxed one just once.
 
-use super::merit::{LINE, Merit, Merits};
+use super::merit::{FEEDER, Floors, LINE, Merit, Merits, SHIFTS};
 use crate::assembly::candidates::Want;
 use crate::assembly::plan::units_for;
 use crate::network::Job;
@@ -32,7 +33,7 @@ use std::collections::BTreeMap;
 /// Relative room on every error limit: what a whole circuit may differ from sums on paper.
 pub const PAPER: f64 = 0.003;
 
-/// Families in a chain from the reference at most. Declared.
+/// Families in a row that share their first output at most. Declared.
 pub const DEPTH: usize = 5;
 
 /// How fine the relaxed network looks.
@@ -40,7 +41,7 @@ pub const DEPTH: usize = 5;
 pub struct Resolution {
     /// Ratio of one density to the next.
     pub density: f64,
-    /// Levels of variance per factor 2 (a power of two).
+    /// Levels of variance up to each limit.
     pub levels: u32,
 }
 
@@ -64,122 +65,168 @@ pub struct Tree {
     pub served: Vec<f64>,
 }
 
-/// A feed: an input current for a family of one kind, on a line of at most some level.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
-pub struct Feed {
-    /// Rail of the family that takes it.
-    pub rail: usize,
-    /// Its kind.
-    pub kind: usize,
-    /// Index of the current.
-    pub current: usize,
-    /// Level of variance the line has collected.
-    pub level: usize,
-}
-
-/// A relaxed family with what it serves.
-#[derive(Debug, Clone, PartialEq)]
-pub struct Column {
-    /// What it gives, and how often.
-    pub gives: Vec<(Feed, f64)>,
-    /// Outputs it serves.
-    pub serves: Vec<usize>,
-    /// Area, m^2.
-    pub area: f64,
-}
-
-/// A family of a real network, as the relaxed one sees it.
-#[derive(Debug, Clone, PartialEq)]
-pub struct Real {
-    /// Fed by the reference.
-    pub root: bool,
-    /// Input current, A.
-    pub into: f64,
-    /// Units in the input leg.
-    pub units: u32,
-    /// Variance its line has collected, at the tracked climate.
-    pub variance: f64,
-    /// Density, m^2/A.
-    pub density: f64,
-    /// Outputs it serves.
-    pub serves: Vec<usize>,
-}
-
-/// Chains of so many families at most: least costs before the feed is paid for, and what feeds one
-/// family shorter are worth.
-struct Layer {
-    tables: [Vec<Vec<(f64, u32, u32)>>; 2],
-    feeds: Vec<f64>,
-}
-
-/// A kind of family on one rail: its most demanding output, or none.
+/// Levels of variance: even shares of every limit, since what a limit leaves for an output's own leg
+/// is what counts.
 #[derive(Debug, Clone)]
-struct Label {
-    leader: Option<usize>,
-    line: f64,
-    density: f64,
-    /// How many children of this kind one family may have.
-    copies: f64,
-    /// Outputs a family of the kind may serve, the leader first.
-    serves: Vec<Item>,
-}
-
-#[derive(Debug, Clone, Copy)]
-struct Item {
-    output: usize,
-    own: f64,
-    density: f64,
-}
-
-/// Levels of variance: zero, then steps with a few leading bits of the number, as they come.
-#[derive(Debug, Clone)]
-struct Levels {
-    first: u64,
-    shift: u32,
-    values: Vec<f64>,
+pub(super) struct Levels {
+    pub(super) values: Vec<f64>,
+    /// Places of evenly spaced variances, to look a level up.
+    places: Vec<u16>,
+    step: f64,
 }
 
 impl Levels {
-    fn new(least: f64, most: f64, per_octave: u32) -> Levels {
-        let shift = 52 - per_octave.trailing_zeros();
-        let first = least.to_bits() >> shift;
-        let last = most.to_bits() >> shift;
-        let mut values = vec![0.0];
-        values.extend((first..=last).map(|b| f64::from_bits(b << shift)));
-        Levels {
-            first,
-            shift,
-            values,
+    fn new(limits: &[f64], shares: u32) -> Levels {
+        let mut values: Vec<f64> = limits
+            .iter()
+            .flat_map(|l| (0..shares).map(move |n| l * f64::from(n) / f64::from(shares)))
+            .collect();
+        values.sort_by(f64::total_cmp);
+        // Two limits' shares may lie closer than either is fine.
+        let mut kept: Vec<f64> = Vec::new();
+        for &v in &values {
+            let next = limits
+                .iter()
+                .copied()
+                .filter(|l| *l > v)
+                .fold(f64::INFINITY, f64::min);
+            let last = kept.last().copied().unwrap_or(f64::NEG_INFINITY);
+            if v - last >= 0.7 * next / f64::from(shares) {
+                kept.push(v);
+            }
         }
+        let most = kept.last().copied().unwrap_or(0.0);
+        let step = kept
+            .windows(2)
+            .map(|w| w[1] - w[0])
+            .fold(most.max(1e-12), f64::min);
+        let mut levels = Levels {
+            values: kept,
+            places: Vec::new(),
+            step,
+        };
+        let mut at = 0;
+        for n in 0..=(most / step) as usize {
+            while at + 1 < levels.values.len() && levels.values[at + 1] <= n as f64 * step {
+                at += 1;
+            }
+            levels.places.push(at as u16);
+        }
+        levels
     }
     /// The level at or below a variance.
     #[inline(always)]
-    fn of(&self, variance: f64) -> usize {
-        let bits = variance.to_bits() >> self.shift;
-        if bits < self.first {
-            return 0;
+    pub(super) fn of(&self, variance: f64) -> usize {
+        let place = ((variance / self.step) as usize).min(self.places.len() - 1);
+        let mut at = self.places[place] as usize;
+        while at + 1 < self.values.len() && self.values[at + 1] <= variance {
+            at += 1;
         }
-        ((bits - self.first) as usize + 1).min(self.values.len() - 1)
+        at
     }
 }
 
+/// A most demanding output (or none) at one step of density.
+#[derive(Debug, Clone)]
+pub(super) struct Kind {
+    /// The output; none in a family that only feeds.
+    pub(super) leader: Option<usize>,
+    rail: usize,
+    /// Density, m^2/A: of area, and (the next step) of variance.
+    pub(super) density: [f64; 2],
+    /// Variance of an input or feeder leg times its current, A.
+    pub(super) line: f64,
+    /// Per output of the spec: variance over room, times current, A, by the way its current may be
+    /// shifted, and the least density of a leg, m^2/A; none where it is more demanding.
+    own: Vec<Option<([f64; SHIFTS], f64)>>,
+}
+
+/// Where a subtree starts: what its top family takes.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
+struct State {
+    rail: usize,
+    /// Place of its first output in the order.
+    first: usize,
+    /// Families between the top one and the one that serves the first output.
+    above: usize,
+    current: usize,
+    level: usize,
+}
+
+/// Least costs of subtrees with one first output, one top rail and one number of families above,
+/// by current and level, with the kind of the top family.
+type Table = Vec<(f64, u32)>;
+
 /// The relaxed problem of a job.
 pub struct Relaxed {
-    labels: [Vec<Label>; 2],
+    pub(super) kinds: [Vec<Kind>; 2],
+    /// Outputs, the dearest first.
+    pub(super) order: Vec<usize>,
+    pub(super) rails: Vec<usize>,
     limits: Vec<f64>,
     tolerances: Vec<f64>,
-    currents: Vec<f64>,
-    units: Vec<u32>,
-    amps: Vec<f64>,
+    pub(super) currents: Vec<f64>,
+    pub(super) units: Vec<u32>,
+    pub(super) amps: Vec<f64>,
     counts: Vec<f64>,
     rules: [AreaRule; 2],
-    densities: Vec<f64>,
-    levels: Levels,
+    pub(super) levels: Levels,
     /// Finer levels, of a gate line behind the input leg: never handed on.
-    lines: Levels,
-    root: Rail,
-    reference: usize,
-    roots: usize,
+    pub(super) lines: Levels,
+    pub(super) root: usize,
+    pub(super) reference: usize,
+    pub(super) roots: usize,
+    /// No family takes more area than the spec allows, m^2.
+    pub(super) cap: f64,
+}
+
+/// What one kind of family has gathered while the order is walked from its end.
+struct Desk {
+    /// Per input current and number of units: area and price of the input leg, and what serving
+    /// the outputs behind the present one brings, by level of the line.
+    inputs: Vec<Vec<Input>>,
+    /// The least of these over the numbers of units, by input current and level of the line.
+    least: Vec<f64>,
+    /// What children behind the present one bring, by level of the gate line.
+    kids: Vec<f64>,
+    /// Level of the gate line, by input current and level of the line.
+    lines: Vec<u16>,
+    /// Level of a child's line, by its input current and level of the gate line.
+    drops: Vec<u16>,
+    /// Area of a feeder, by current.
+    feeders: Vec<f64>,
+}
+
+struct Input {
+    units: u32,
+    base: f64,
+    gains: Vec<f64>,
+    /// The same for a family that the reference feeds.
+    root: f64,
+}
+
+impl Desk {
+    fn settle(&mut self, levels: usize) {
+        self.least.clear();
+        self.least.resize(self.inputs.len() * levels, f64::INFINITY);
+        for (inputs, least) in self.inputs.iter().zip(self.least.chunks_mut(levels)) {
+            for input in inputs {
+                for (least, gain) in least.iter_mut().zip(&input.gains) {
+                    *least = least.min(input.base + gain);
+                }
+            }
+        }
+    }
+}
+
+/// All tables, by place in the order.
+struct Tables {
+    /// By place, then by families above: the rail follows from both.
+    layers: Vec<Vec<Table>>,
+    /// By place and rail: the best over layers, with the layer.
+    best: Vec<[Vec<(f64, u8)>; 2]>,
+    /// By place: the cheapest networks that start at the reference.
+    roots: Vec<Vec<(f64, u32)>>,
 }
 
 impl Relaxed {
@@ -192,53 +239,23 @@ impl Relaxed {
         units: &[u32],
         resolution: Resolution,
     ) -> Option<Relaxed> {
-        let merit: Vec<Merit> = merits.outputs.iter().copied().collect::<Option<_>>()?;
+        let merit: Vec<&Floors> = merits
+            .outputs
+            .iter()
+            .map(Option::as_ref)
+            .collect::<Option<_>>()?;
         let limits: Vec<f64> = wants
             .iter()
             .map(|w| (w.limit * (1.0 + PAPER) / w.sigma).powi(2))
             .collect();
-        let labels = [Rail::Sink, Rail::Source].map(|rail| {
-            let mut order: Vec<usize> = (0..wants.len())
-                .filter(|&k| wants[k].rail == rail)
-                .collect();
-            order.sort_by(|&a, &b| merit[b].line.total_cmp(&merit[a].line).then(a.cmp(&b)));
-            let mut labels: Vec<Label> = order
-                .iter()
-                .enumerate()
-                .map(|(p, &g)| Label {
-                    leader: Some(g),
-                    line: merit[g].line,
-                    density: merit[g].density,
-                    copies: 1.0,
-                    serves: order[p..]
-                        .iter()
-                        .map(|&k| Item {
-                            output: k,
-                            own: if limits[k].is_finite() {
-                                merit[k].own.max(merit[g].line)
-                            } else {
-                                0.0
-                            },
-                            density: merit[k].density,
-                        })
-                        .collect(),
-                })
-                .collect();
-            if let Some(bare) = merits.bare[rail as usize] {
-                labels.push(Label {
-                    leader: None,
-                    line: bare.line,
-                    density: bare.density,
-                    // Below each of them some output is served, and every output only once.
-                    copies: wants.len() as f64,
-                    serves: Vec::new(),
-                });
-            }
-            labels
-        });
         let finite: Vec<f64> = limits.iter().copied().filter(|l| l.is_finite()).collect();
-        let most = finite.iter().copied().fold(1e-9, f64::max) * 1.5;
-        let least = finite.iter().copied().fold(most, f64::min) * 0.02;
+        let mut distinct = if finite.is_empty() {
+            vec![1e-4]
+        } else {
+            finite
+        };
+        distinct.sort_by(f64::total_cmp);
+        distinct.dedup_by(|a, b| *a <= *b * 1.05);
         let reference = job.spec.reference.current().0;
         let mut currents = currents.to_vec();
         if !currents.contains(&reference) {
@@ -246,55 +263,44 @@ impl Relaxed {
             currents.sort_by(f64::total_cmp);
         }
         let index = currents.iter().position(|&c| c == reference).unwrap_or(0);
-        // From the least density any family can have to where mismatch is no more.
-        let floor = labels
-            .iter()
-            .flatten()
-            .map(|l| l.density)
-            .fold(f64::INFINITY, f64::min);
-        let largest = currents.iter().copied().fold(0.0, f64::max);
-        let smallest = currents.iter().copied().fold(f64::INFINITY, f64::min);
-        let (mut start, mut end) = (f64::INFINITY, floor * 4.0);
-        for (k, want) in wants.iter().enumerate() {
-            if limits[k].is_finite() {
-                let need = |into: f64| merit[k].own * (1.0 / want.current + 1.0 / into) / limits[k];
-                start = start.min(need(largest));
-                end = end.max(6.0 * need(smallest.max(want.current * 0.05)));
-            }
-        }
-        let mut densities = vec![floor];
-        if start.is_finite() && start > floor {
-            densities.push(start);
-        }
-        while densities[densities.len() - 1] < end {
-            densities.push(densities[densities.len() - 1] * resolution.density);
-        }
         let copies = match job.spec.reference {
             crate::spec::Reference::Current { copies, .. } => copies as usize,
             crate::spec::Reference::Resistor { .. } => 1,
         };
+        // Dearest first, by area times variance over the limit.
+        let worth = |k: usize| wants[k].count * merit[k].all().own[1] / limits[k];
+        let mut order: Vec<usize> = (0..wants.len()).collect();
+        order.sort_by(|&a, &b| worth(b).total_cmp(&worth(a)).then(a.cmp(&b)));
+        let kinds = [Rail::Sink, Rail::Source]
+            .map(|rail| kinds(rail, wants, &limits, &currents, merits, &merit, resolution));
         Some(Relaxed {
-            labels,
+            kinds,
+            order,
+            rails: wants.iter().map(|w| w.rail as usize).collect(),
+            tolerances: wants
+                .iter()
+                .map(|w| w.limit.min(1.0) * (1.0 + LINE))
+                .collect(),
             limits,
-            tolerances: wants.iter().map(|w| w.limit + LINE).collect(),
             currents,
             units: units.to_vec(),
             amps: wants.iter().map(|w| w.current).collect(),
             counts: wants.iter().map(|w| w.count).collect(),
             rules: [Rail::Sink, Rail::Source].map(|r| job.tech(r).mosfet().area),
-            densities,
-            levels: Levels::new(least, most, resolution.levels),
-            lines: Levels::new(least / 8.0, most, resolution.levels.max(4) * 4),
-            root: job.spec.reference.rail(),
+            levels: Levels::new(&distinct, resolution.levels),
+            lines: Levels::new(&distinct, resolution.levels * 2),
+            root: job.spec.reference.rail() as usize,
             reference: index,
             roots: copies,
+            cap: job.spec.limits.area.map_or(f64::INFINITY, |a| a.0),
         })
     }
 
-    /// Least area of a leg of `m` units whose devices take `a` m^2 each.
+    /// Least area of a leg of `m` units of `unit` ampere each.
     #[inline(always)]
-    fn leg(&self, rail: usize, a: f64, m: f64) -> f64 {
+    fn leg_area(&self, rail: usize, density: f64, unit: f64, m: f64) -> f64 {
         let rule = &self.rules[rail];
+        let a = density * unit;
         if rule.shared {
             let beta = rule.border_width * rule.border_length / 2.0;
             let n = m + 1.0;
@@ -305,145 +311,131 @@ impl Relaxed {
         }
     }
 
-    /// Place of a feed in a list of all.
-    #[inline(always)]
-    fn index(&self, feed: &Feed) -> usize {
-        let (c, v) = (self.currents.len(), self.levels.values.len());
-        let before = if feed.rail == 1 {
-            self.labels[0].len()
-        } else {
-            0
-        };
-        ((before + feed.kind) * c + feed.current) * v + feed.level
+    /// Least area of an input leg.
+    pub(super) fn input_leg(&self, kind: &Kind, unit: f64, m: f64) -> f64 {
+        self.leg_area(kind.rail, kind.density[0], unit, m)
     }
 
-    /// Feeds in all.
-    fn feeds(&self) -> usize {
-        (self.labels[0].len() + self.labels[1].len())
-            * self.currents.len()
-            * self.levels.values.len()
-    }
-
-    /// Area of the leg that feeds a family with `current` from a family of a kind.
+    /// Area of the leg that feeds a family with `current`: as few units as may be, none larger than
+    /// the leader's own current. Whole units may leave it short by as much as a feeder may err.
     #[inline(always)]
-    fn feeder(&self, rail: usize, label: &Label, low: f64, current: f64) -> f64 {
-        // As few units as may be: none larger than the leader's own current. Whole units may leave
-        // the leg short of its current by as much as a line may err.
-        let largest = label.leader.map_or(current, |g| {
-            (self.amps[g] * (1.0 + self.tolerances[g].min(1.0))).min(current)
+    pub(super) fn feeder(&self, kind: &Kind, current: f64) -> f64 {
+        let largest = kind.leader.map_or(current, |g| {
+            (self.amps[g] * (1.0 + self.tolerances[g])).min(current)
         });
-        let units = current / largest;
-        self.leg(rail, low * current * (1.0 - LINE) / units, units)
+        let m = current / largest;
+        let unit = current * (1.0 - FEEDER) / m;
+        self.leg_area(kind.rail, kind.density[0], unit, m)
     }
 
-    /// What children can bring to a family, by level of its gate line.
-    fn kids(
+    /// Area of an output's legs and the last level of the line at which it holds.
+    #[inline(always)]
+    pub(super) fn leg_of(
         &self,
-        rail: usize,
-        label: &Label,
-        low: f64,
-        high: f64,
-        feeds: &[f64],
-        out: &mut [f64],
-    ) {
-        let levels = self.levels.values.len();
-        out.fill(0.0);
-        let legs: Vec<(f64, f64)> = self
-            .currents
-            .iter()
-            .map(|&c| (self.feeder(rail, label, low, c), label.line / (high * c)))
-            .collect();
-        let mut best = vec![0.0f64; out.len()];
-        for (kind, to) in self.labels[1 - rail].iter().enumerate() {
-            best.fill(0.0);
-            for (i, &(leg, own)) in legs.iter().enumerate() {
-                let first = self.index(&Feed {
-                    rail: 1 - rail,
-                    kind,
-                    current: i,
-                    level: 0,
-                });
-                let worth = &feeds[first..first + levels];
-                if worth[0] <= leg {
-                    continue;
-                }
-                for (j, best) in best.iter_mut().enumerate() {
-                    let gain = leg - worth[self.levels.of(self.lines.values[j] + own)];
-                    if gain >= 0.0 {
-                        break;
-                    }
-                    *best = best.min(gain);
-                }
-            }
-            for (out, best) in out.iter_mut().zip(&best) {
-                *out += to.copies * best;
-            }
+        kind: &Kind,
+        k: usize,
+        root: bool,
+        into: f64,
+        unit: f64,
+    ) -> Option<(f64, usize)> {
+        let (own, density) = kind.own[k].as_ref()?;
+        let (m, rounding) = units_for(self.amps[k], unit);
+        if rounding.abs() > self.tolerances[k] {
+            return None;
         }
+        let own = own[match (root, rounding.abs() <= 1e-9) {
+            (true, true) => 0,
+            (false, true) => 1,
+            _ => 2,
+        }];
+        let most = if self.limits[k].is_finite() {
+            let left = self.limits[k] - own * (1.0 / self.amps[k] + 1.0 / into);
+            // Less than nothing as well where no shape serves the leg so shifted.
+            if left.is_nan() || left < 0.0 {
+                return None;
+            }
+            self.levels.of(left)
+        } else {
+            self.levels.values.len() - 1
+        };
+        let density = kind.density[0].max(*density);
+        let leg = self.leg_area(kind.rail, density, unit, f64::from(m));
+        Some((self.counts[k] * leg, most))
     }
 
-    fn upper(&self, d: usize) -> f64 {
-        self.densities.get(d + 1).copied().unwrap_or(f64::INFINITY)
+    fn desk(&self, kind: &Kind, prices: &Prices) -> Desk {
+        let (c, v) = (self.currents.len(), self.levels.values.len());
+        let mut inputs = Vec::with_capacity(c);
+        let mut lines = Vec::with_capacity(c * v);
+        let mut drops = Vec::with_capacity(c * self.lines.values.len());
+        let mut feeders = Vec::with_capacity(c);
+        for &into in &self.currents {
+            inputs.push(
+                self.units
+                    .iter()
+                    .map(|&units| {
+                        let unit = into / f64::from(units);
+                        (units, self.input_leg(kind, unit, f64::from(units)))
+                    })
+                    .filter(|(_, area)| *area <= self.cap)
+                    .map(|(units, area)| Input {
+                        units,
+                        base: area + prices.overhead * into,
+                        gains: vec![0.0; v],
+                        root: 0.0,
+                    })
+                    .collect(),
+            );
+            let own = kind.line / into;
+            lines.extend(
+                self.levels
+                    .values
+                    .iter()
+                    .map(|l| self.lines.of(l + own) as u16),
+            );
+            drops.extend(
+                self.lines
+                    .values
+                    .iter()
+                    .map(|l| self.levels.of(l + own) as u16),
+            );
+            feeders.push(self.feeder(kind, into));
+        }
+        let mut desk = Desk {
+            inputs,
+            least: Vec::new(),
+            kids: vec![0.0; self.lines.values.len()],
+            lines,
+            drops,
+            feeders,
+        };
+        desk.settle(v);
+        desk
     }
 
-    /// Least cost of one kind of family before it pays for its feed, by feed taken and (last) from
-    /// the reference, with its step of density and index of units.
-    fn family(
-        &self,
-        rail: usize,
-        l: usize,
-        prices: &Prices,
-        feeds: &[f64],
-    ) -> Vec<(f64, u32, u32)> {
-        let label = &self.labels[rail][l];
-        let levels = self.levels.values.len();
-        let slots = self.currents.len() * levels;
-        let mut best = vec![(f64::INFINITY, 0u32, 0u32); slots + 1];
-        let mut kids = vec![0.0; self.lines.values.len()];
-        let mut gains = vec![0.0; levels];
-        for d in 0..self.densities.len() {
-            let (low, high) = (self.densities[d], self.upper(d));
-            if high < label.density {
+    /// What the best child from a table costs, with its feeder, by level of the gate line.
+    fn child(&self, desk: &Desk, table: &[f64], out: &mut Vec<f64>) {
+        let (v, w) = (self.levels.values.len(), self.lines.values.len());
+        out.clear();
+        out.resize(w, f64::INFINITY);
+        for (c, &leg) in desk.feeders.iter().enumerate() {
+            let row = &table[c * v..(c + 1) * v];
+            if row[0].is_infinite() {
                 continue;
             }
-            let low = low.max(label.density);
-            let mut known = false;
-            for (i, &into) in self.currents.iter().enumerate() {
-                let own = label.line / (high * into);
-                for (n, &units) in self.units.iter().enumerate() {
-                    let unit = into / f64::from(units);
-                    let Some(last) =
-                        self.outputs(rail, label, low, high, into, unit, prices, &mut gains)
-                    else {
-                        continue;
-                    };
-                    if !known {
-                        self.kids(rail, label, low, high, feeds, &mut kids);
-                        known = true;
-                    }
-                    let base =
-                        self.leg(rail, low * unit, f64::from(units)) + prices.overhead * into;
-                    for j in 0..=last {
-                        let line = self.lines.of(self.levels.values[j] + own);
-                        let cost = base + gains[j] + kids[line];
-                        let slot = &mut best[i * levels + j];
-                        if cost < slot.0 {
-                            *slot = (cost, d as u32, n as u32);
-                        }
-                    }
+            let drops = &desk.drops[c * w..(c + 1) * w];
+            for (out, &drop) in out.iter_mut().zip(drops) {
+                let cost = leg + row[drop as usize];
+                if cost < *out {
+                    *out = cost;
                 }
             }
         }
-        if rail == self.root as usize {
-            best[slots] = best[self.reference * levels];
-        }
-        best
     }
 
-    /// What all roots together cost at least at given prices: what feeds are worth follows from the
-    /// leaves up (dynamic programming over chains of at most [`DEPTH`] families).
+    /// What all roots together cost at least at given prices.
     pub fn root_cost(&self, prices: &Prices) -> f64 {
-        let layers = self.climb(prices);
-        self.roots_of(&layers[layers.len() - 1])
+        self.roots_of(&self.climb(prices))
     }
 
     /// The bound that prices prove for an overhead current of at most `budget` ampere, once it is
@@ -452,343 +444,570 @@ impl Relaxed {
         prices.outputs.iter().sum::<f64>() - prices.overhead * budget + roots
     }
 
-    /// The bound and the relaxed networks it stands on, one per kind of root: each a plane that no
-    /// price can rise above.
+    /// The bound and the relaxed networks it stands on: each a plane that no price can rise above.
     pub fn planes(&self, prices: &Prices, budget: f64) -> (f64, Vec<Tree>) {
-        let layers = self.climb(prices);
-        let top = layers.len() - 1;
-        let rail = self.root as usize;
-        let slots = self.currents.len() * self.levels.values.len();
+        let tables = self.climb(prices);
+        let bound = Relaxed::bound(prices, self.roots_of(&tables), budget);
         let mut known = BTreeMap::new();
-        let trees = (0..self.labels[rail].len())
-            .filter(|&l| layers[top].tables[rail][l][slots].0.is_finite())
-            .map(|l| self.tree(&layers, top, rail, l, slots, prices, &mut known))
-            .collect();
-        let bound = Relaxed::bound(prices, self.roots_of(&layers[top]), budget);
+        let mut trees = Vec::new();
+        // One per leader, so that planes differ.
+        let mut leaders = Vec::new();
+        for kind in cheapest(&tables.roots[0]) {
+            let leader = self.kinds[self.root][kind].leader;
+            if leaders.contains(&leader) {
+                continue;
+            }
+            leaders.push(leader);
+            if let Some((_, top)) = self.family(&tables, prices, None, 0, kind) {
+                trees.push(self.tree(&tables, prices, &top, &mut known));
+            }
+        }
         (bound, trees)
     }
 
-    fn roots_of(&self, layer: &Layer) -> f64 {
-        let slots = self.currents.len() * self.levels.values.len();
-        let tables = &layer.tables[self.root as usize];
-        let least = tables
-            .iter()
-            .map(|t| t[slots].0)
-            .fold(f64::INFINITY, f64::min);
-        least + (self.roots as f64 - 1.0) * least.min(0.0)
+    fn roots_of(&self, tables: &Tables) -> f64 {
+        let least = |p: usize| {
+            let roots = tables.roots[p].iter();
+            roots.map(|r| r.0).fold(f64::INFINITY, f64::min)
+        };
+        // One network has the first output; copies of the reference may start others.
+        let mut others: Vec<f64> = (1..self.order.len()).map(|p| least(p).min(0.0)).collect();
+        others.sort_by(f64::total_cmp);
+        least(0) + others.iter().take(self.roots - 1).sum::<f64>()
     }
 
-    /// From the leaves up: chains of one family, of two, and so on.
-    fn climb(&self, prices: &Prices) -> Vec<Layer> {
+    /// From the last output to the first: all subtrees.
+    fn climb(&self, prices: &Prices) -> Tables {
         let slots = self.currents.len() * self.levels.values.len();
-        let mut layers: Vec<Layer> = Vec::new();
-        let mut feeds = vec![0.0; self.feeds()];
-        for _ in 0..DEPTH {
-            let tasks: Vec<(usize, usize)> = (0..2)
-                .flat_map(|r| (0..self.labels[r].len()).map(move |l| (r, l)))
-                .collect();
-            let found: Vec<Vec<(f64, u32, u32)>> = tasks
-                .par_iter()
-                .map(|&(r, l)| self.family(r, l, prices, &feeds))
-                .collect();
-            let mut next = vec![0.0; self.feeds()];
-            let mut tables = [Vec::new(), Vec::new()];
-            for (&(rail, kind), table) in tasks.iter().zip(found) {
-                let first = self.index(&Feed {
+        let mut desks: [Vec<Desk>; 2] = [0, 1].map(|r| {
+            let kinds: &[Kind] = &self.kinds[r];
+            kinds.par_iter().map(|k| self.desk(k, prices)).collect()
+        });
+        let n = self.order.len();
+        let mut tables = Tables {
+            layers: (0..n).map(|_| Vec::new()).collect(),
+            best: (0..n)
+                .map(|_| [0, 1].map(|_| vec![(f64::INFINITY, 0); slots]))
+                .collect(),
+            roots: vec![Vec::new(); n],
+        };
+        for p in (0..n).rev() {
+            let k = self.order[p];
+            let home = self.rails[k];
+            // The family that serves it, and those above.
+            let mut children: [Vec<Vec<f64>>; 2] =
+                [0, 1].map(|r| vec![vec![f64::INFINITY; self.lines.values.len()]; desks[r].len()]);
+            for above in 0..DEPTH {
+                let rail = (home + above) % 2;
+                let costs: Option<Vec<f64>> = above
+                    .checked_sub(1)
+                    .map(|a| tables.layers[p][a].iter().map(|s| s.0).collect());
+                let table = self.layer(
+                    &desks[rail],
+                    &mut children[rail],
                     rail,
-                    kind,
-                    current: 0,
-                    level: 0,
-                });
-                for (worth, slot) in next[first..first + slots].iter_mut().zip(&table) {
-                    *worth = (-slot.0).max(0.0);
+                    k,
+                    prices,
+                    costs.as_deref(),
+                );
+                let mut better = false;
+                for (best, here) in tables.best[p][rail].iter_mut().zip(&table) {
+                    if here.0 < best.0 {
+                        *best = (here.0, above as u8);
+                        better = true;
+                    }
                 }
-                tables[rail].push(table);
+                tables.layers[p].push(table);
+                // A layer of relays that is nowhere better than the last on its rail makes no
+                // better ones.
+                if !better {
+                    break;
+                }
             }
-            let settled = next == feeds;
-            layers.push(Layer {
-                tables,
-                feeds: std::mem::replace(&mut feeds, next),
-            });
-            if settled {
-                break;
+            // One more layer to hang below a family that is the last of its row.
+            let made = tables.layers[p].len();
+            let last: Vec<f64> = tables.layers[p][made - 1].iter().map(|s| s.0).collect();
+            let rail = (home + made) % 2;
+            let mut scratch = Vec::new();
+            for (desk, child) in desks[rail].iter().zip(&mut children[rail]) {
+                self.child(desk, &last, &mut scratch);
+                for (a, b) in child.iter_mut().zip(&scratch) {
+                    *a = a.min(*b);
+                }
+            }
+            tables.roots[p] = self.roots_at(&desks[self.root], &children[self.root], k, prices);
+            for r in 0..2 {
+                let kinds = &self.kinds[r];
+                desks[r]
+                    .par_iter_mut()
+                    .zip(&children[r])
+                    .zip(kinds)
+                    .for_each(|((desk, child), kind)| {
+                        for (kid, cost) in desk.kids.iter_mut().zip(child) {
+                            *kid += cost.min(0.0);
+                        }
+                        if r == home {
+                            self.gather(desk, kind, k, prices);
+                        }
+                    });
             }
         }
-        layers
+        tables
     }
 
-    /// The tree from a state on.
-    #[allow(clippy::too_many_arguments)]
+    /// An output becomes one that families of the kind may serve besides their first.
+    fn gather(&self, desk: &mut Desk, kind: &Kind, k: usize, prices: &Prices) {
+        for (i, &into) in self.currents.iter().enumerate() {
+            for input in &mut desk.inputs[i] {
+                let unit = into / f64::from(input.units);
+                if let Some((area, most)) = self.leg_of(kind, k, false, into, unit) {
+                    let gain = area - prices.outputs[k];
+                    if gain < 0.0 {
+                        for g in &mut input.gains[..=most] {
+                            *g += gain;
+                        }
+                    }
+                }
+                if i == self.reference
+                    && let Some((area, _)) = self.leg_of(kind, k, true, into, unit)
+                {
+                    input.root += (area - prices.outputs[k]).min(0.0);
+                }
+            }
+        }
+        desk.settle(self.levels.values.len());
+    }
+
+    /// Subtrees with first output `k`: served by the top family itself, or by a child from a table.
+    /// Keeps the least costs of children.
+    fn layer(
+        &self,
+        desks: &[Desk],
+        children: &mut [Vec<f64>],
+        rail: usize,
+        k: usize,
+        prices: &Prices,
+        below: Option<&[f64]>,
+    ) -> Table {
+        let (c, v) = (self.currents.len(), self.levels.values.len());
+        let kinds: &[Kind] = &self.kinds[rail];
+        let chunk = desks.len().div_ceil(16).max(1);
+        let parts: Vec<Table> = desks
+            .par_chunks(chunk)
+            .zip(children.par_chunks_mut(chunk))
+            .zip(kinds.par_chunks(chunk))
+            .enumerate()
+            .map(|(part, ((desks, children), kinds))| {
+                let mut table = vec![(f64::INFINITY, 0u32); c * v];
+                let mut child = Vec::new();
+                let mut costs = vec![0.0; v];
+                for (n, (desk, kind)) in desks.iter().zip(kinds).enumerate() {
+                    let number = (part * chunk + n) as u32;
+                    if let Some(below) = below {
+                        self.child(desk, below, &mut child);
+                        for (kept, new) in children[n].iter_mut().zip(&child) {
+                            *kept = kept.min(*new);
+                        }
+                    }
+                    for (i, &into) in self.currents.iter().enumerate() {
+                        costs.fill(f64::INFINITY);
+                        if below.is_some() {
+                            costs.copy_from_slice(&desk.least[i * v..(i + 1) * v]);
+                        } else {
+                            for input in &desk.inputs[i] {
+                                let unit = into / f64::from(input.units);
+                                let Some((area, most)) = self.leg_of(kind, k, false, into, unit)
+                                else {
+                                    continue;
+                                };
+                                let first = input.base + area - prices.outputs[k];
+                                for (cost, gain) in costs[..=most].iter_mut().zip(&input.gains) {
+                                    *cost = cost.min(first + gain);
+                                }
+                            }
+                        }
+                        let lines = &desk.lines[i * v..(i + 1) * v];
+                        let slots = &mut table[i * v..(i + 1) * v];
+                        for ((cost, &line), slot) in costs.iter().zip(lines).zip(slots) {
+                            let mut total = cost + desk.kids[line as usize];
+                            if below.is_some() {
+                                total += child[line as usize];
+                            }
+                            if total < slot.0 {
+                                *slot = (total, number);
+                            }
+                        }
+                    }
+                }
+                table
+            })
+            .collect();
+        let mut parts = parts.into_iter();
+        let mut table = parts.next().unwrap_or_default();
+        for part in parts {
+            for (slot, other) in table.iter_mut().zip(part) {
+                if other.0 < slot.0 {
+                    *slot = other;
+                }
+            }
+        }
+        table
+    }
+
+    /// Networks that start at the reference with first output `k`, by kind of their root.
+    fn roots_at(
+        &self,
+        desks: &[Desk],
+        children: &[Vec<f64>],
+        k: usize,
+        prices: &Prices,
+    ) -> Vec<(f64, u32)> {
+        let v = self.levels.values.len();
+        let into = self.currents[self.reference];
+        let mut out = Vec::new();
+        let kinds = &self.kinds[self.root];
+        for (n, ((desk, child), kind)) in desks.iter().zip(children).zip(kinds).enumerate() {
+            let line = desk.lines[self.reference * v] as usize;
+            let mut least = f64::INFINITY;
+            for input in &desk.inputs[self.reference] {
+                let unit = into / f64::from(input.units);
+                let mut first = child[line];
+                if self.rails[k] == self.root
+                    && let Some((area, _)) = self.leg_of(kind, k, true, into, unit)
+                {
+                    first = first.min(area - prices.outputs[k]);
+                }
+                least = least.min(input.base + input.root + desk.kids[line] + first);
+            }
+            if least.is_finite() {
+                out.push((least, n as u32));
+            }
+        }
+        out
+    }
+}
+
+/// Kinds of roots, the cheapest first.
+fn cheapest(roots: &[(f64, u32)]) -> impl Iterator<Item = usize> {
+    let mut sorted = roots.to_vec();
+    sorted.sort_by(|a, b| a.0.total_cmp(&b.0));
+    sorted.into_iter().map(|(_, kind)| kind as usize)
+}
+
+/// A family of a relaxed network.
+#[derive(Debug, Clone)]
+struct Family {
+    area: f64,
+    overhead: f64,
+    serves: Vec<usize>,
+    gives: Vec<State>,
+}
+
+impl Relaxed {
+    /// The cheapest family of a kind at a state, or at the reference.
+    fn family(
+        &self,
+        tables: &Tables,
+        prices: &Prices,
+        state: Option<State>,
+        first: usize,
+        kind_index: usize,
+    ) -> Option<(f64, Family)> {
+        let v = self.levels.values.len();
+        let rail = state.map_or(self.root, |s| s.rail);
+        let kind = &self.kinds[rail][kind_index];
+        let (i, j) = state.map_or((self.reference, 0), |s| (s.current, s.level));
+        let into = self.currents[i];
+        let root = state.is_none();
+        let line = self.lines.values[self.lines.of(self.levels.values[j] + kind.line / into)];
+        // The cheapest child with a first output.
+        let child = |p: usize, layer: Option<usize>| {
+            let mut best: Option<(f64, f64, State)> = None;
+            for (c, &current) in self.currents.iter().enumerate() {
+                let level = self.levels.of(line + kind.line / current);
+                let (cost, above) = match layer {
+                    Some(above) => (tables.layers[p][above][c * v + level].0, above),
+                    None => {
+                        let slot = tables.best[p][1 - rail][c * v + level];
+                        (slot.0, slot.1 as usize)
+                    }
+                };
+                let leg = self.feeder(kind, current);
+                if cost + leg < best.map_or(f64::INFINITY, |b| b.0) {
+                    let state = State {
+                        rail: 1 - rail,
+                        first: p,
+                        above,
+                        current: c,
+                        level,
+                    };
+                    best = Some((cost + leg, leg, state));
+                }
+            }
+            best
+        };
+        let mut best: Option<(f64, Family)> = None;
+        let below = match state {
+            Some(s) if s.above > 0 => child(first, Some(s.above - 1)),
+            Some(_) => None,
+            None => child(first, None),
+        };
+        for &units in &self.units {
+            let unit = into / f64::from(units);
+            let area = self.input_leg(kind, unit, f64::from(units));
+            if area > self.cap {
+                continue;
+            }
+            let mut family = Family {
+                area,
+                overhead: into,
+                serves: Vec::new(),
+                gives: Vec::new(),
+            };
+            let mut cost = area + prices.overhead * into;
+            let k = self.order[first];
+            let own = (self.rails[k] == rail && state.is_none_or(|s| s.above == 0))
+                .then(|| self.leg_of(kind, k, root, into, unit))
+                .flatten()
+                .filter(|(_, most)| root || j <= *most)
+                .map(|(area, _)| area);
+            let gain = own.map(|area| area - prices.outputs[k]);
+            match (gain, below) {
+                (Some(gain), other) if other.is_none_or(|b| gain <= b.0) => {
+                    cost += gain;
+                    family.area += own.unwrap_or_default();
+                    family.serves.push(k);
+                }
+                (_, Some((least, leg, child))) => {
+                    cost += least;
+                    family.area += leg;
+                    family.gives.push(child);
+                }
+                _ => continue,
+            }
+            for p in first + 1..self.order.len() {
+                let k = self.order[p];
+                if self.rails[k] == rail
+                    && let Some((area, most)) = self.leg_of(kind, k, root, into, unit)
+                    && (root || j <= most)
+                    && area < prices.outputs[k]
+                {
+                    cost += area - prices.outputs[k];
+                    family.area += area;
+                    family.serves.push(k);
+                }
+            }
+            if cost < best.as_ref().map_or(f64::INFINITY, |b| b.0) {
+                best = Some((cost, family));
+            }
+        }
+        let (mut cost, mut family) = best?;
+        for p in first + 1..self.order.len() {
+            if let Some((least, leg, state)) = child(p, None)
+                && least < 0.0
+            {
+                cost += least;
+                family.area += leg;
+                family.gives.push(state);
+            }
+        }
+        Some((cost, family))
+    }
+
+    /// The tree below a family.
     fn tree(
         &self,
-        layers: &[Layer],
-        depth: usize,
-        rail: usize,
-        l: usize,
-        slot: usize,
+        tables: &Tables,
         prices: &Prices,
-        known: &mut BTreeMap<(usize, usize, usize, usize), Tree>,
+        family: &Family,
+        known: &mut BTreeMap<State, Tree>,
     ) -> Tree {
-        if let Some(tree) = known.get(&(depth, rail, l, slot)) {
-            return tree.clone();
-        }
-        let levels = self.levels.values.len();
-        let slots = self.currents.len() * levels;
-        let (_, d, n) = layers[depth].tables[rail][l][slot];
-        let (i, j) = if slot == slots {
-            (self.reference, 0)
-        } else {
-            (slot / levels, slot % levels)
-        };
-        let family = self.column(
-            rail,
-            l,
-            [i, j],
-            [d as usize, n as usize],
-            prices,
-            &layers[depth].feeds,
-        );
         let mut tree = Tree {
             area: family.area,
-            overhead: self.currents[i],
+            overhead: family.overhead,
             served: vec![0.0; self.amps.len()],
         };
         for &k in &family.serves {
             tree.served[k] += 1.0;
         }
-        for (feed, times) in &family.gives {
-            let below = self.tree(
-                layers,
-                depth - 1,
-                feed.rail,
-                feed.kind,
-                feed.current * levels + feed.level,
-                prices,
-                known,
-            );
-            tree.area += times * below.area;
-            tree.overhead += times * below.overhead;
+        let v = self.levels.values.len();
+        for state in &family.gives {
+            let below = match known.get(state) {
+                Some(below) => below.clone(),
+                None => {
+                    let slot = state.current * v + state.level;
+                    let kind = tables.layers[state.first][state.above][slot].1 as usize;
+                    let found = self.family(tables, prices, Some(*state), state.first, kind);
+                    let (_, top) = found.expect("a state is known where a family reaches it");
+                    let below = self.tree(tables, prices, &top, known);
+                    known.insert(*state, below.clone());
+                    below
+                }
+            };
+            tree.area += below.area;
+            tree.overhead += below.overhead;
             for (a, b) in tree.served.iter_mut().zip(&below.served) {
-                *a += times * b;
+                *a += b;
             }
         }
-        known.insert((depth, rail, l, slot), tree.clone());
         tree
     }
+}
 
-    /// What serving outputs brings, by level of the line before the input leg; the last level at
-    /// which the leader still holds.
-    #[allow(clippy::too_many_arguments)]
-    fn outputs(
-        &self,
-        rail: usize,
-        label: &Label,
-        low: f64,
-        high: f64,
-        into: f64,
-        unit: f64,
-        prices: &Prices,
-        gains: &mut [f64],
-    ) -> Option<usize> {
-        let levels = gains.len();
-        let mut last = levels - 1;
-        for (p, item) in label.serves.iter().enumerate() {
-            let k = item.output;
-            let taken = self.leg_of(rail, item, low, high, into, unit);
-            let Some((area, most)) = taken else {
-                if p == 0 {
-                    return None;
-                }
+/// Every leader of a rail, and none, at every step of density.
+fn kinds(
+    rail: Rail,
+    wants: &[Want],
+    limits: &[f64],
+    currents: &[f64],
+    merits: &Merits,
+    merit: &[&Floors],
+    resolution: Resolution,
+) -> Vec<Kind> {
+    let mut order: Vec<usize> = (0..wants.len())
+        .filter(|&k| wants[k].rail == rail)
+        .collect();
+    let line = |k: usize| merit[k].all().line;
+    order.sort_by(|&a, &b| line(b).total_cmp(&line(a)).then(a.cmp(&b)));
+    let mut labels: Vec<(Option<usize>, &Floors, &[usize])> = Vec::new();
+    for (p, &g) in order.iter().enumerate() {
+        labels.push((Some(g), merit[g], &order[p..]));
+    }
+    if let Some(bare) = &merits.bare[rail as usize] {
+        labels.push((None, bare, &[]));
+    }
+    // From the least density any family can have to where mismatch is no more.
+    let largest = currents.iter().copied().fold(0.0, f64::max);
+    let smallest = currents.iter().copied().fold(f64::INFINITY, f64::min);
+    let floor = labels
+        .iter()
+        .map(|l| l.1.all().density)
+        .fold(f64::INFINITY, f64::min);
+    let (mut start, mut end) = (f64::INFINITY, floor * 4.0);
+    for (k, want) in wants.iter().enumerate() {
+        if limits[k].is_finite() {
+            let need =
+                |into: f64| merit[k].all().own[1] * (1.0 / want.current + 1.0 / into) / limits[k];
+            start = start.min(need(largest));
+            end = end.max(6.0 * need(smallest.max(want.current * 0.05)));
+        }
+    }
+    let mut densities = vec![floor];
+    if start.is_finite() && start > floor {
+        densities.push(start);
+    }
+    while densities[densities.len() - 1] < end {
+        densities.push(densities[densities.len() - 1] * resolution.density);
+    }
+    let mut out = Vec::new();
+    for (leader, floors, serves) in labels {
+        for (d, &low) in densities.iter().enumerate() {
+            let high = densities.get(d + 1).copied().unwrap_or(f64::INFINITY);
+            let &Merit { line, density, .. } = floors.up_to(high);
+            if high < density || line.is_infinite() {
                 continue;
-            };
-            let gain = area - prices.outputs[k];
-            if p == 0 {
-                last = most;
-                gains[..=most].fill(gain);
-            } else if gain < 0.0 {
-                for g in &mut gains[..=most.min(last)] {
-                    *g += gain;
+            }
+            let mut own = vec![None; wants.len()];
+            for &k in serves {
+                let merit = merit[k].up_to(high);
+                if high >= merit.density {
+                    let over = merit.own.map(|own| {
+                        if limits[k].is_finite() {
+                            own.max(line) / high
+                        } else {
+                            0.0
+                        }
+                    });
+                    own[k] = Some((over, merit.density));
                 }
             }
+            out.push(Kind {
+                leader,
+                rail: rail as usize,
+                density: [low.max(density), high],
+                line: line / high,
+                own,
+            });
         }
-        if label.leader.is_none() {
-            gains.fill(0.0);
-        }
-        Some(last)
     }
+    out
+}
 
-    /// Area of an output's legs and the last level of the line at which it holds.
-    #[inline(always)]
-    fn leg_of(
-        &self,
-        rail: usize,
-        item: &Item,
-        low: f64,
-        high: f64,
-        into: f64,
-        unit: f64,
-    ) -> Option<(f64, usize)> {
-        let k = item.output;
-        if high < item.density {
+/// A family of a real network, as the relaxed one sees it.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Real {
+    /// Fed by the reference.
+    pub root: bool,
+    /// Input current, A.
+    pub into: f64,
+    /// Units in the input leg.
+    pub units: u32,
+    /// Even part of the variance its line has collected.
+    pub variance: f64,
+    /// Density, m^2/A.
+    pub density: f64,
+    /// Outputs it serves.
+    pub serves: Vec<usize>,
+}
+
+impl Relaxed {
+    /// Area of the relaxed family that a real one maps onto. `None` where the real family is outside
+    /// the declared design space, or does what the relaxed one cannot.
+    pub fn image(&self, rail: usize, family: &Real, children: &[&Real]) -> Option<f64> {
+        let leads = |leader: Option<usize>| match leader {
+            Some(g) => family.serves.contains(&g),
+            None => true,
+        };
+        let kind = self.kinds[rail].iter().find(|kind| {
+            leads(kind.leader)
+                && kind.density[0] <= family.density
+                && family.density < kind.density[1]
+        })?;
+        let known = |amps: f64| self.currents.iter().any(|c| (c / amps - 1.0).abs() < 1e-9);
+        if !known(family.into) || !self.units.contains(&family.units) {
             return None;
         }
-        let (m, rounding) = units_for(self.amps[k], unit);
-        if rounding.abs() > self.tolerances[k] {
-            return None;
-        }
-        let most = if self.limits[k].is_finite() {
-            let left = self.limits[k] - item.own * (1.0 / self.amps[k] + 1.0 / into) / high;
-            if left < 0.0 {
-                return None;
-            }
-            self.levels.of(left)
-        } else {
-            self.levels.values.len() - 1
-        };
-        let area = self.counts[k] * self.leg(rail, low.max(item.density) * unit, f64::from(m));
-        Some((area, most))
-    }
-
-    /// The family behind a state (current and level of its feed) with a step of density and an
-    /// index of units, where feeds are worth so much.
-    fn column(
-        &self,
-        rail: usize,
-        l: usize,
-        [i, j]: [usize; 2],
-        [d, n]: [usize; 2],
-        prices: &Prices,
-        feeds: &[f64],
-    ) -> Column {
-        let label = &self.labels[rail][l];
-        let (low, high) = (self.densities[d].max(label.density), self.upper(d));
-        let into = self.currents[i];
-        let units = f64::from(self.units[n]);
-        let unit = into / units;
-        let mut column = Column {
-            gives: Vec::new(),
-            serves: Vec::new(),
-            area: self.leg(rail, low * unit, units),
-        };
-        for (p, item) in label.serves.iter().enumerate() {
-            if let Some((area, most)) = self.leg_of(rail, item, low, high, into, unit)
-                && j <= most
-                && (p == 0 || area < prices.outputs[item.output])
-            {
-                column.area += area;
-                column.serves.push(item.output);
-            }
-        }
-        let line = self.lines.values[self
-            .lines
-            .of(self.levels.values[j] + label.line / (high * into))];
-        for (kind, to) in self.labels[1 - rail].iter().enumerate() {
-            let mut best: Option<(f64, f64, Feed)> = None;
-            for (c, &current) in self.currents.iter().enumerate() {
-                let leg = self.feeder(rail, label, low, current);
-                let level = self.levels.of(line + label.line / (high * current));
-                let feed = Feed {
-                    rail: 1 - rail,
-                    kind,
-                    current: c,
-                    level,
-                };
-                let gain = leg - feeds[self.index(&feed)];
-                if gain < best.map_or(0.0, |b| b.0) {
-                    best = Some((gain, leg, feed));
-                }
-            }
-            if let Some((_, leg, feed)) = best {
-                column.area += to.copies * leg;
-                column.gives.push((feed, to.copies));
-            }
-        }
-        column
-    }
-
-    /// The relaxed family that a real one maps onto: fed with `into` ampere in `units` units on a
-    /// line that has collected `variance`, of `density` m^2/A, serving `serves` and feeding
-    /// children (kind by their outputs, input current, collected variance). `None` where the real
-    /// family is outside the declared design space.
-    pub fn image(&self, rail: usize, family: &Real, children: &[&Real]) -> Option<Column> {
-        let kind_of = |r: usize, serves: &[usize]| {
-            self.labels[r].iter().position(|l| match l.leader {
-                Some(g) => serves.contains(&g),
-                None => true,
-            })
-        };
-        let current_of = |amps: f64| {
-            self.currents
-                .iter()
-                .position(|c| (c / amps - 1.0).abs() < 1e-9)
-        };
-        let l = kind_of(rail, &family.serves)?;
-        let label = &self.labels[rail][l];
-        let i = current_of(family.into)?;
-        let n = self.units.iter().position(|&u| u == family.units)?;
-        let d = self
-            .densities
-            .partition_point(|&d| d <= family.density)
-            .checked_sub(1)?;
-        let (low, high) = (self.densities[d].max(label.density), self.upper(d));
-        let into = self.currents[i];
-        let units = f64::from(self.units[n]);
-        let unit = into / units;
+        let unit = family.into / f64::from(family.units);
+        let mut area = self.input_leg(kind, unit, f64::from(family.units));
         let level = self.levels.of(family.variance);
-        let mut column = Column {
-            gives: Vec::new(),
-            serves: family.serves.clone(),
-            area: self.leg(rail, low * unit, units),
-        };
         for &k in &family.serves {
-            let item = label.serves.iter().find(|item| item.output == k)?;
-            let (area, most) = self.leg_of(rail, item, low, high, into, unit)?;
+            let (leg, most) = self.leg_of(kind, k, family.root, family.into, unit)?;
             if level > most {
                 return None;
             }
-            column.area += area;
+            area += leg;
         }
         let line = self.lines.values[self
             .lines
-            .of(self.levels.values[level] + label.line / (high * into))];
+            .of(self.levels.values[level] + kind.line / family.into)];
         for child in children {
-            let c = current_of(child.into)?;
-            let kind = kind_of(1 - rail, &child.serves)?;
-            let arrives = self
-                .levels
-                .of(line + label.line / (high * self.currents[c]));
-            let level = self.levels.of(child.variance);
-            if arrives > level {
+            let arrives = self.levels.of(line + kind.line / child.into);
+            if !known(child.into) || arrives > self.levels.of(child.variance) {
                 return None;
             }
-            column.area += self.feeder(rail, label, low, self.currents[c]);
-            column.gives.push((
-                Feed {
-                    rail: 1 - rail,
-                    kind,
-                    current: c,
-                    level,
-                },
-                1.0,
-            ));
+            area += self.feeder(kind, child.into);
         }
-        Some(column)
+        Some(area)
     }
 
     /// A first guess of what an output is worth: alone, with half its limit left to its line.
     pub fn guess(&self) -> Vec<f64> {
-        let mut outputs = vec![0.0; self.amps.len()];
-        for r in 0..2 {
-            for item in self.labels[r].iter().filter_map(|l| l.serves.first()) {
-                let k = item.output;
-                let d = if self.limits[k].is_finite() {
-                    (2.5 * item.own / (self.limits[k] * self.amps[k])).max(item.density)
-                } else {
-                    item.density
+        (0..self.amps.len())
+            .map(|k| {
+                let holds = |kind: &&Kind| {
+                    kind.leader == Some(k)
+                        && kind.own[k].is_some_and(|(own, _)| {
+                            !self.limits[k].is_finite()
+                                || 2.5 * own[1] / self.amps[k] <= self.limits[k]
+                        })
                 };
-                outputs[k] = 2.0 * self.counts[k] * self.leg(r, d * self.amps[k], 1.0);
-            }
-        }
-        outputs
+                let least = self.kinds[self.rails[k]]
+                    .iter()
+                    .filter(holds)
+                    .map(|kind| self.input_leg(kind, self.amps[k], 1.0))
+                    .fold(f64::INFINITY, f64::min);
+                2.0 * self.counts[k] * if least.is_finite() { least } else { 1e-12 }
+            })
+            .collect()
     }
 }

@@ -618,14 +618,17 @@ pub fn not_covered(proof: &Proof) -> Vec<String> {
     let declared = &proof.declared;
     vec![
         format!(
-            "Networks that meet the spec only because gate lines off by more than {} cancel.",
-            format::percent(declared.line_error)
+            "Networks that meet the spec only because gate lines off by more than {} of an output's \
+             error limit, or feeders off by more than {}, cancel.",
+            format::percent(declared.line_error),
+            format::percent(declared.feeder_error)
         ),
         format!(
             "Errors of a whole circuit that differ from the sum along its path by more than {} of \
              a limit.",
             format::percent(declared.paper)
         ),
+        "The mismatch of a degeneration resistor is that of a unit at the reference current.".to_owned(),
         "The floors under area times variance are the least that descents found, less a margin of 3 % and more; they \
          are tested on random sizes, not derived."
             .to_owned(),
