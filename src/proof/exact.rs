@@ -7,7 +7,7 @@ use rayon::prelude::*;
 use std::collections::BTreeMap;
 
 /// Most outputs that are told apart.
-pub const MOST: usize = 5;
+pub const MOST: usize = 4;
 
 /// The cheapest relaxed network at a price of overhead current.
 #[derive(Debug, Clone, Copy, PartialEq)]

@@ -80,11 +80,14 @@ impl Prover {
     pub fn new(job: &Job, pool: &Pool) -> Option<Prover> {
         let wants = wants(job, 1.0);
         let (density, levels, steps) = match (job.spec.search.effort, wants.len()) {
-            (Effort::Thorough, ..=exact::MOST) => (1.01, 300, 0),
-            (_, ..=exact::MOST) => (1.02, 100, 0),
-            (Effort::Quick, _) => (1.25, 8, 20),
-            (Effort::Normal, _) => (1.2, 10, 24),
-            (Effort::Thorough, _) => (1.05, 40, 200),
+            (Effort::Thorough, ..=2) => (1.01, 300, 30),
+            (_, ..=2) => (1.02, 100, 30),
+            (Effort::Thorough, ..=exact::MOST) => (1.02, 200, 30),
+            (_, ..=exact::MOST) => (1.05, 100, 30),
+            (Effort::Quick | Effort::Normal, 31..) => (1.5, 40, 8),
+            (Effort::Quick, _) => (1.2, 70, 30),
+            (Effort::Normal, _) => (1.2, 70, 24),
+            (Effort::Thorough, _) => (1.05, 280, 200),
         };
         let currents = currents(job, &wants, job.spec.overhead_limit());
         // Floors for every density are dear where outputs are many.

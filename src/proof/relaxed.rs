@@ -41,7 +41,7 @@ pub const DEPTH: usize = 5;
 pub struct Resolution {
     /// Ratio of one density to the next.
     pub density: f64,
-    /// Levels of variance up to each limit.
+    /// Levels of variance in all, about: even shares of every limit that is asked for.
     pub levels: u32,
 }
 
@@ -256,6 +256,7 @@ impl Relaxed {
         };
         distinct.sort_by(f64::total_cmp);
         distinct.dedup_by(|a, b| *a <= *b * 1.05);
+        let shares = (resolution.levels / distinct.len() as u32).max(8);
         let reference = job.spec.reference.current().0;
         let mut currents = currents.to_vec();
         if !currents.contains(&reference) {
@@ -287,8 +288,8 @@ impl Relaxed {
             amps: wants.iter().map(|w| w.current).collect(),
             counts: wants.iter().map(|w| w.count).collect(),
             rules: [Rail::Sink, Rail::Source].map(|r| job.tech(r).mosfet().area),
-            levels: Levels::new(&distinct, resolution.levels),
-            lines: Levels::new(&distinct, resolution.levels * 2),
+            levels: Levels::new(&distinct, shares),
+            lines: Levels::new(&distinct, shares * 2),
             root: job.spec.reference.rail() as usize,
             reference: index,
             roots: copies,
