@@ -183,7 +183,8 @@ struct Bound {
     gap: Number,
     /// Overhead current that may be used, A.
     overhead_current: Number,
-    /// Dual price of serving each output, m2, in the order of the spec.
+    /// Dual price of serving each output, m2, in the order of the spec; none where outputs are few
+    /// enough to be told apart.
     output_prices: Vec<Number>,
     /// Dual price of overhead current, m2/A.
     overhead_price: Number,
