@@ -2,7 +2,7 @@
 //! outputs instead of prices for them. Exact, and affordable for a handful of outputs; what is left
 //! to a price is overhead current alone.
 
-use super::relaxed::{DEPTH, Kind, Relaxed};
+use super::relaxed::{DEPTH, Kind, Relaxed, Table, costs, improve, least_of};
 use rayon::prelude::*;
 use std::collections::BTreeMap;
 
@@ -30,17 +30,11 @@ struct State {
     level: usize,
 }
 
-/// Least cost and the kind of the top family, by current and level.
-type Table = Vec<(f64, u32)>;
-
 /// One kind of family, ready to be combined.
 struct Desk {
     /// By input current: every number of units, with what it costs, and what it costs to serve each
     /// output of the rail (in bits of the set) and up to which level.
     inputs: Vec<Vec<Input>>,
-    lines: Vec<u16>,
-    drops: Vec<u16>,
-    feeders: Vec<f64>,
     /// By set of outputs: what children that serve exactly these cost, by level of the gate line.
     kids: Vec<Vec<f64>>,
 }
@@ -102,42 +96,40 @@ impl Relaxed {
                     self.parted(&desks[r], r, set, below.as_deref())
                 });
                 for (best, layer) in tables.best[set].iter_mut().zip(&layer) {
-                    for (best, here) in best.iter_mut().zip(layer) {
-                        if here.0 < best.0 {
-                            *best = (here.0, above as u8);
-                            better = true;
-                        }
-                    }
+                    better |= improve(best, layer, above);
                 }
                 tables.layers[set].push(layer);
-                // A layer of relays that is nowhere better makes no better ones.
                 if !better {
                     break;
                 }
             }
-            for (desks, below) in desks.iter_mut().zip(tables.best[set].iter().rev()) {
-                let row: Vec<f64> = below.iter().map(|s| s.0).collect();
-                desks.par_iter_mut().for_each(|desk| {
-                    let mut child = Vec::new();
-                    self.hang(&desk.drops, &desk.feeders, &row, &mut child);
-                    for (kid, cost) in desk.kids[set].iter_mut().zip(&child) {
-                        *kid = kid.min(*cost);
-                    }
-                });
+            for (r, desks) in desks.iter_mut().enumerate() {
+                let below: Vec<f64> = tables.best[set][1 - r].iter().map(|s| s.0).collect();
+                desks
+                    .par_iter_mut()
+                    .zip(&self.hops[r])
+                    .for_each(|(desk, hops)| {
+                        let mut child = Vec::new();
+                        hops.child(&below, &mut child);
+                        for (kid, cost) in desk.kids[set].iter_mut().zip(&child) {
+                            *kid = kid.min(*cost);
+                        }
+                    });
             }
         }
         // The root.
-        let line_of = |desk: &Desk| desk.lines[self.reference * self.levels.values.len()] as usize;
+        let gate = self.reference * self.levels.values.len();
         let mut roots: Vec<(f64, usize)> = desks[self.root]
             .iter()
             .enumerate()
             .map(|(n, desk)| {
+                let line = self.hops[self.root][n].lines[gate] as usize;
                 let mut least = f64::INFINITY;
                 for input in &desk.inputs[self.reference] {
-                    for own in subsets(full) {
+                    for own in subsets(self.on(self.root, full)) {
                         let served: Option<f64> = bits(own).map(|k| input.root[k]).sum();
                         if let Some(served) = served {
-                            let kids = desk.kids[full & !own][line_of(desk)];
+                            let kids = desk.kids[full & !own][line];
                             least = least.min(input.base + served + kids);
                         }
                     }
@@ -153,14 +145,13 @@ impl Relaxed {
                 overhead: 0.0,
             };
         };
-        let mut known = BTreeMap::new();
-        let mut memo = Reader {
+        let mut reader = Reader {
             relaxed: self,
             tables: &tables,
             price,
-            known: &mut known,
+            known: BTreeMap::new(),
         };
-        let (area, overhead) = memo.walk(None, full, kind);
+        let (area, overhead) = reader.walk(None, full, kind);
         Cheapest {
             cost,
             area,
@@ -170,71 +161,42 @@ impl Relaxed {
 
     fn spread(&self, kind: &Kind, rail: usize, price: f64) -> Desk {
         let n = self.amps.len();
-        let mut inputs = Vec::new();
-        let (mut lines, mut drops, mut feeders) = (Vec::new(), Vec::new(), Vec::new());
-        for &into in &self.currents {
-            let mut list = Vec::new();
-            for &units in &self.units {
-                let unit = into / f64::from(units);
-                let area = self.input_leg(kind, unit, f64::from(units));
-                if area > self.cap {
-                    continue;
-                }
-                let serve = |k: usize, root: bool| {
-                    (self.rails[k] == rail)
-                        .then(|| self.leg_of(kind, k, root, into, unit))
-                        .flatten()
-                        .filter(|(leg, _)| area + leg <= self.cap)
-                };
-                list.push(Input {
-                    base: area + price * into,
-                    serves: (0..n).map(|k| serve(k, false)).collect(),
-                    root: (0..n).map(|k| serve(k, true).map(|s| s.0)).collect(),
-                });
-            }
-            inputs.push(list);
-            let own = kind.line / into;
-            let at = |to: &super::relaxed::Levels, from: &super::relaxed::Levels| -> Vec<u16> {
-                from.values.iter().map(|l| to.of(l + own) as u16).collect()
-            };
-            lines.extend(at(&self.lines, &self.levels));
-            drops.extend(at(&self.levels, &self.lines));
-            feeders.push(self.feeder(kind, into));
-        }
-        let w = self.lines.values.len();
-        let mut kids = vec![vec![f64::INFINITY; w]; 1 << n];
+        let inputs = self.currents.iter().map(|&into| {
+            self.input_legs(kind, into)
+                .map(|(_, unit, area)| {
+                    let serve = |k: usize, root: bool| {
+                        (self.rails[k] == rail)
+                            .then(|| self.leg_of(kind, k, root, into, unit))
+                            .flatten()
+                            .filter(|(leg, _)| area + leg <= self.cap)
+                    };
+                    Input {
+                        base: area + price * into,
+                        serves: (0..n).map(|k| serve(k, false)).collect(),
+                        root: (0..n).map(|k| serve(k, true).map(|s| s.0)).collect(),
+                    }
+                })
+                .collect()
+        });
+        let mut kids = vec![vec![f64::INFINITY; self.hops[rail][0].levels()]; 1 << n];
         kids[0].fill(0.0);
         Desk {
-            inputs,
-            lines,
-            drops,
-            feeders,
+            inputs: inputs.collect(),
             kids,
         }
     }
 
-    /// What the best child of a table costs, with its feeder, by level of the gate line.
-    fn hang(&self, drops: &[u16], feeders: &[f64], table: &[f64], out: &mut Vec<f64>) {
-        let (v, w) = (self.levels.values.len(), self.lines.values.len());
-        out.clear();
-        out.resize(w, f64::INFINITY);
-        for (c, &leg) in feeders.iter().enumerate() {
-            let row = &table[c * v..(c + 1) * v];
-            if row[0].is_infinite() {
-                continue;
-            }
-            for (out, &drop) in out.iter_mut().zip(&drops[c * w..(c + 1) * w]) {
-                *out = out.min(leg + row[drop as usize]);
-            }
-        }
+    /// The outputs of a set that are on a rail.
+    fn on(&self, rail: usize, set: usize) -> usize {
+        let mine = bits(set).filter(|&k| self.rails[k] == rail);
+        mine.map(|k| 1 << k).sum()
     }
 
     /// Subtrees that serve exactly a set: families that serve some of it and part the rest among
     /// children, or (with a table of what stands below) relays.
     fn parted(&self, desks: &[Desk], rail: usize, set: usize, below: Option<&[f64]>) -> Table {
         let (c, v) = (self.currents.len(), self.levels.values.len());
-        let mine = bits(set).filter(|&k| self.rails[k] == rail);
-        let mine: usize = mine.map(|k| 1 << k).sum();
+        let mine = self.on(rail, set);
         let chunk = desks.len().div_ceil(16).max(1);
         let parts: Vec<Table> = desks
             .par_chunks(chunk)
@@ -244,12 +206,13 @@ impl Relaxed {
                 let mut child = Vec::new();
                 let mut costs = vec![0.0; v];
                 for (n, desk) in desks.iter().enumerate() {
-                    let number = (part * chunk + n) as u32;
+                    let number = part * chunk + n;
+                    let hops = &self.hops[rail][number];
                     if let Some(below) = below {
-                        self.hang(&desk.drops, &desk.feeders, below, &mut child);
+                        hops.child(below, &mut child);
                     }
                     for i in 0..c {
-                        let lines = &desk.lines[i * v..(i + 1) * v];
+                        let lines = &hops.lines[i * v..(i + 1) * v];
                         let slots = &mut table[i * v..(i + 1) * v];
                         if below.is_some() {
                             let base = desk.inputs[i]
@@ -259,7 +222,7 @@ impl Relaxed {
                             for (&line, slot) in lines.iter().zip(slots) {
                                 let total = base + child[line as usize];
                                 if total < slot.0 {
-                                    *slot = (total, number);
+                                    *slot = (total, number as u32);
                                 }
                             }
                             continue;
@@ -289,7 +252,7 @@ impl Relaxed {
                             for ((cost, &line), slot) in both.zip(slots.iter_mut()) {
                                 let total = cost + kids[line as usize];
                                 if total < slot.0 {
-                                    *slot = (total, number);
+                                    *slot = (total, number as u32);
                                 }
                             }
                         }
@@ -298,21 +261,8 @@ impl Relaxed {
                 table
             })
             .collect();
-        let mut parts = parts.into_iter();
-        let mut table = parts.next().unwrap_or_default();
-        for part in parts {
-            for (slot, other) in table.iter_mut().zip(part) {
-                if other.0 < slot.0 {
-                    *slot = other;
-                }
-            }
-        }
-        table
+        least_of(parts)
     }
-}
-
-fn costs(table: &Table) -> Vec<f64> {
-    table.iter().map(|s| s.0).collect()
 }
 
 /// Two or more children that part a set: the one with its lowest output, and the others.
@@ -359,7 +309,7 @@ struct Reader<'t> {
     relaxed: &'t Relaxed,
     tables: &'t Tables,
     price: f64,
-    known: &'t mut BTreeMap<State, (f64, f64)>,
+    known: BTreeMap<State, (f64, f64)>,
 }
 
 impl Reader<'_> {
@@ -396,38 +346,30 @@ impl Relaxed {
         set: usize,
         number: usize,
     ) -> Option<(f64, Family)> {
-        let v = self.levels.values.len();
         let rail = state.map_or(self.root, |s| s.rail);
         let kind = &self.kinds[rail][number];
         let (i, j) = state.map_or((self.reference, 0), |s| (s.current, s.level));
         let into = self.currents[i];
         let root = state.is_none();
-        let line = self.lines.values[self.lines.of(self.levels.values[j] + kind.line / into)];
+        let line = self.gate(kind, i, j);
         // The cheapest child that serves a set alone.
         let child = |set: usize, layer: Option<usize>| {
-            let mut best: Option<(f64, f64, State)> = None;
-            for (c, &current) in self.currents.iter().enumerate() {
-                let level = self.levels.of(line + kind.line / current);
-                let (cost, above) = match layer {
-                    Some(above) => (tables.layers[set][above][1 - rail][c * v + level].0, above),
-                    None => {
-                        let slot = tables.best[set][1 - rail][c * v + level];
-                        (slot.0, slot.1 as usize)
-                    }
-                };
-                let leg = self.feeder(kind, current);
-                if cost + leg < best.map_or(f64::INFINITY, |b| b.0) {
-                    let state = State {
-                        rail: 1 - rail,
-                        set,
-                        above,
-                        current: c,
-                        level,
-                    };
-                    best = Some((cost + leg, leg, state));
+            let known = |slot: usize| match layer {
+                Some(above) => (tables.layers[set][above][1 - rail][slot].0, above),
+                None => {
+                    let (cost, above) = tables.best[set][1 - rail][slot];
+                    (cost, above as usize)
                 }
-            }
-            best
+            };
+            let child = self.cheapest_child(kind, line, known)?;
+            let state = State {
+                rail: 1 - rail,
+                set,
+                above: child.above,
+                current: child.current,
+                level: child.level,
+            };
+            Some((child.cost, child.leg, state))
         };
         // The cheapest children that part a set.
         let mut alone: BTreeMap<usize, Option<(f64, f64, State)>> = BTreeMap::new();
@@ -466,23 +408,14 @@ impl Relaxed {
             }
             groups.insert(part, best);
         }
-        let mine: usize = bits(set)
-            .filter(|&k| self.rails[k] == rail)
-            .map(|k| 1 << k)
-            .sum();
         let relay = state.is_some_and(|s| s.above > 0);
         if relay && let Some(Some(only)) = alone.get(&set) {
             groups.insert(set, (only.0, vec![set]));
         }
         let mut best: Option<(f64, Family)> = None;
-        for &units in &self.units {
-            let unit = into / f64::from(units);
-            let area = self.input_leg(kind, unit, f64::from(units));
-            if area > self.cap {
-                continue;
-            }
-            let overhead = into;
-            for own in subsets(if relay { 0 } else { mine }) {
+        let mine = if relay { 0 } else { self.on(rail, set) };
+        for (_, unit, area) in self.input_legs(kind, into) {
+            for own in subsets(mine) {
                 let (kids, list) = &groups[&(set & !own)];
                 let mut legs = 0.0;
                 let mut holds = kids.is_finite();
@@ -494,7 +427,7 @@ impl Relaxed {
                         _ => holds = false,
                     }
                 }
-                let cost = area + price * overhead + legs + kids;
+                let cost = area + price * into + legs + kids;
                 if !holds || cost >= best.as_ref().map_or(f64::INFINITY, |b| b.0) {
                     continue;
                 }
@@ -506,7 +439,7 @@ impl Relaxed {
                     cost,
                     Family {
                         area: area + legs + children.iter().map(|c| c.1).sum::<f64>(),
-                        overhead,
+                        overhead: into,
                         gives: children.iter().map(|c| c.2).collect(),
                     },
                 ));

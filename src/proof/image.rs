@@ -5,24 +5,23 @@ use super::merit::Gauge;
 use super::relaxed::{Real, Relaxed};
 use crate::assembly::plan::{Clerk, Ledger, Plan, Tally};
 
-/// The families of a plan. `ratios` say how variance goes with climate.
-pub fn families(ledger: &Ledger, plan: &Plan, gauges: &[Gauge; 2], ratios: &[f64]) -> Vec<Real> {
+/// The families of a plan.
+pub fn families(ledger: &Ledger, plan: &Plan, gauges: &[Gauge; 2]) -> Vec<Real> {
     let mut tally = Tally::new();
     Clerk::new(ledger).price(plan, &mut tally);
     plan.members
         .iter()
         .enumerate()
         .map(|(f, member)| {
+            let gauge = &gauges[member.rail as usize];
             let candidate = ledger.candidate(member);
             let solved = &ledger.pool.shapes[member.rail as usize][candidate.index];
             Real {
                 root: member.parent.is_none(),
                 into: member.current,
                 units: member.units,
-                variance: (0..ratios.len())
-                    .map(|c| tally.lines()[f].variance_at(c) / ratios[c])
-                    .fold(f64::INFINITY, f64::min),
-                density: gauges[member.rail as usize].density(solved),
+                variance: gauge.even(|c| tally.lines()[f].variance_at(c)),
+                density: gauge.density(solved),
                 serves: (0..plan.legs.len())
                     .filter(|&k| plan.legs[k] == f)
                     .collect(),

@@ -152,7 +152,7 @@ impl<'a> Gauge<'a> {
     /// The even part of a variance that goes with climate: the largest number whose multiple by
     /// the ratios is nowhere above it. Even parts add up along a path to no more than the even part
     /// of the sum.
-    fn even(&self, variance: impl Fn(usize) -> f64) -> f64 {
+    pub fn even(&self, variance: impl Fn(usize) -> f64) -> f64 {
         (0..self.climates)
             .map(|c| variance(c) / self.ratios[c])
             .fold(f64::INFINITY, f64::min)
@@ -163,9 +163,8 @@ impl<'a> Gauge<'a> {
     fn line(&self, solved: &Solved) -> f64 {
         let least = |c: usize| {
             (0..self.probes.volts.len())
-                .map(|p| &solved.at(p)[c / 8])
-                .filter(|m| m.error.0[c % 8].abs() <= FEEDER)
-                .map(|m| m.variance_out.0[c % 8].min(m.variance_in.0[c % 8]))
+                .filter(|&p| solved.at(p)[c / 8].error.0[c % 8].abs() <= FEEDER)
+                .map(|p| lesser(solved, p, c))
                 .fold(f64::INFINITY, f64::min)
         };
         if (0..self.climates).any(|c| least(c).is_infinite()) {
@@ -220,12 +219,7 @@ impl<'a> Gauge<'a> {
             }
         }
         let own = [low, high]
-            .map(|probe| {
-                self.even(|c| {
-                    let m = &solved.at(probe)[c / 8];
-                    m.variance_out.0[c % 8].min(m.variance_in.0[c % 8])
-                })
-            })
+            .map(|probe| self.even(|c| lesser(solved, probe, c)))
             .into_iter()
             .fold(f64::INFINITY, f64::min);
         let [none, lined, rounded] = room.map(|room| density * own / room);
@@ -240,6 +234,12 @@ impl<'a> Gauge<'a> {
         let line = density * self.line(solved);
         (line.is_finite() && self.hangs(solved)).then_some([0.0, 0.0, 0.0, line, density])
     }
+}
+
+/// The lesser variance of an input and an output leg at a probe and a climate, times its current, A.
+fn lesser(solved: &Solved, probe: usize, climate: usize) -> f64 {
+    let m = &solved.at(probe)[climate / 8];
+    m.variance_out.0[climate % 8].min(m.variance_in.0[climate % 8])
 }
 
 /// How far a class of shifts reaches for an output with an accuracy limit, fraction.
@@ -354,7 +354,7 @@ pub fn merits(job: &Job, pool: &Pool, wants: &[Want], stepwise: bool) -> Merits 
         .par_iter()
         .map(|&(rail, output)| {
             let gauge = Gauge::new(*job, rail, pool, wants, &ratios);
-            let mut search = Search::new(&gauge, pool, output);
+            let search = Search::new(&gauge, pool, output);
             let Some(all) = search.floors(f64::INFINITY, STARTS) else {
                 return (None, search.solutions());
             };
@@ -436,7 +436,7 @@ impl<'s, 'a> Search<'s, 'a> {
     }
 
     /// Floors of all shapes whose density is at most `cap`; `None` where the pool has none.
-    fn floors(&mut self, cap: f64, starts: usize) -> Option<Merit> {
+    fn floors(&self, cap: f64, starts: usize) -> Option<Merit> {
         let within = |m: &&(Marks, Shape)| m.0[OF_DENSITY] <= cap;
         if !self.marks.iter().any(|m| within(&m)) {
             return None;

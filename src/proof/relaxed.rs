@@ -130,10 +130,10 @@ impl Levels {
 #[derive(Debug, Clone)]
 pub(super) struct Kind {
     /// The output; none in a family that only feeds.
-    pub(super) leader: Option<usize>,
+    leader: Option<usize>,
     rail: usize,
     /// Density, m^2/A: of area, and (the next step) of variance.
-    pub(super) density: [f64; 2],
+    density: [f64; 2],
     /// Variance of an input or feeder leg times its current, A.
     pub(super) line: f64,
     /// Per output of the spec: variance over room, times current, A, by the way its current may be
@@ -153,31 +153,115 @@ struct State {
     level: usize,
 }
 
-/// Least costs of subtrees with one first output, one top rail and one number of families above,
-/// by current and level, with the kind of the top family.
-type Table = Vec<(f64, u32)>;
+/// Least costs of subtrees by current and level of what their top family takes, with its kind.
+pub(super) type Table = Vec<(f64, u32)>;
+
+/// The costs alone.
+pub(super) fn costs(table: &Table) -> Vec<f64> {
+    table.iter().map(|s| s.0).collect()
+}
+
+/// The least of several tables, slot by slot; of equals the first.
+pub(super) fn least_of(tables: Vec<Table>) -> Table {
+    let mut tables = tables.into_iter();
+    let mut least = tables.next().unwrap_or_default();
+    for table in tables {
+        for (slot, other) in least.iter_mut().zip(table) {
+            if other.0 < slot.0 {
+                *slot = other;
+            }
+        }
+    }
+    least
+}
+
+/// Takes the slots of a layer that are better than the best so far. Returns whether any was: where
+/// none is, no layer of relays above can be either.
+pub(super) fn improve(best: &mut [(f64, u8)], table: &Table, layer: usize) -> bool {
+    let mut better = false;
+    for (best, here) in best.iter_mut().zip(table) {
+        if here.0 < best.0 {
+            *best = (here.0, layer as u8);
+            better = true;
+        }
+    }
+    better
+}
+
+/// What lies between what a family takes and what its children take, for one kind.
+pub(super) struct Hops {
+    /// Level of the gate line, by input current and level of the line.
+    pub(super) lines: Vec<u16>,
+    /// Level of a child's line, by its input current and level of the gate line.
+    drops: Vec<u16>,
+    /// Area of a feeder, by current.
+    feeders: Vec<f64>,
+}
+
+impl Hops {
+    /// Levels of the gate line.
+    pub(super) fn levels(&self) -> usize {
+        self.drops.len() / self.feeders.len()
+    }
+
+    /// What the best child from a table (costs by current and level) costs, with its feeder, by
+    /// level of the gate line.
+    pub(super) fn child(&self, table: &[f64], out: &mut Vec<f64>) {
+        let currents = self.feeders.len();
+        let (v, w) = (table.len() / currents, self.levels());
+        out.clear();
+        out.resize(w, f64::INFINITY);
+        let rows = table.chunks(v).zip(self.drops.chunks(w));
+        for (&leg, (row, drops)) in self.feeders.iter().zip(rows) {
+            if row[0].is_infinite() {
+                continue;
+            }
+            for (out, &drop) in out.iter_mut().zip(drops) {
+                let cost = leg + row[drop as usize];
+                if cost < *out {
+                    *out = cost;
+                }
+            }
+        }
+    }
+}
+
+/// A child as it is read back: what it takes, and what it costs.
+#[derive(Debug, Clone, Copy)]
+pub(super) struct Child {
+    /// Its cost and its feeder's, m^2.
+    pub(super) cost: f64,
+    /// Area of the feeder, m^2.
+    pub(super) leg: f64,
+    pub(super) current: usize,
+    pub(super) level: usize,
+    /// The layer its cost stands in.
+    pub(super) above: usize,
+}
 
 /// The relaxed problem of a job.
 pub struct Relaxed {
     pub(super) kinds: [Vec<Kind>; 2],
     /// Outputs, the dearest first.
-    pub(super) order: Vec<usize>,
+    order: Vec<usize>,
     pub(super) rails: Vec<usize>,
     limits: Vec<f64>,
     tolerances: Vec<f64>,
     pub(super) currents: Vec<f64>,
-    pub(super) units: Vec<u32>,
+    units: Vec<u32>,
     pub(super) amps: Vec<f64>,
     counts: Vec<f64>,
     rules: [AreaRule; 2],
     pub(super) levels: Levels,
     /// Finer levels, of a gate line behind the input leg: never handed on.
-    pub(super) lines: Levels,
+    lines: Levels,
     pub(super) root: usize,
     pub(super) reference: usize,
     pub(super) roots: usize,
     /// No family takes more area than the spec allows, m^2.
     pub(super) cap: f64,
+    /// What feeding on costs each kind; no price changes it.
+    pub(super) hops: [Vec<Hops>; 2],
 }
 
 /// What one kind of family has gathered while the order is walked from its end.
@@ -189,12 +273,6 @@ struct Desk {
     least: Vec<f64>,
     /// What children behind the present one bring, by level of the gate line.
     kids: Vec<f64>,
-    /// Level of the gate line, by input current and level of the line.
-    lines: Vec<u16>,
-    /// Level of a child's line, by its input current and level of the gate line.
-    drops: Vec<u16>,
-    /// Area of a feeder, by current.
-    feeders: Vec<f64>,
 }
 
 struct Input {
@@ -274,7 +352,7 @@ impl Relaxed {
         order.sort_by(|&a, &b| worth(b).total_cmp(&worth(a)).then(a.cmp(&b)));
         let kinds = [Rail::Sink, Rail::Source]
             .map(|rail| kinds(rail, wants, &limits, &currents, merits, &merit, resolution));
-        Some(Relaxed {
+        let mut relaxed = Relaxed {
             kinds,
             order,
             rails: wants.iter().map(|w| w.rail as usize).collect(),
@@ -294,7 +372,77 @@ impl Relaxed {
             reference: index,
             roots: copies,
             cap: job.spec.limits.area.map_or(f64::INFINITY, |a| a.0),
-        })
+            hops: [Vec::new(), Vec::new()],
+        };
+        relaxed.hops = relaxed
+            .kinds
+            .each_ref()
+            .map(|kinds| kinds.par_iter().map(|kind| relaxed.hop(kind)).collect());
+        Some(relaxed)
+    }
+
+    fn hop(&self, kind: &Kind) -> Hops {
+        let mut hops = Hops {
+            lines: Vec::new(),
+            drops: Vec::new(),
+            feeders: Vec::new(),
+        };
+        for &into in &self.currents {
+            let own = kind.line / into;
+            let at = |to: &Levels, from: &Levels| -> Vec<u16> {
+                from.values.iter().map(|l| to.of(l + own) as u16).collect()
+            };
+            hops.lines.extend(at(&self.lines, &self.levels));
+            hops.drops.extend(at(&self.levels, &self.lines));
+            hops.feeders.push(self.feeder(kind, into));
+        }
+        hops
+    }
+
+    /// Input legs that can take a current: units, current of a unit, and area.
+    pub(super) fn input_legs(
+        &self,
+        kind: &Kind,
+        into: f64,
+    ) -> impl Iterator<Item = (u32, f64, f64)> {
+        let legs = self.units.iter().map(move |&units| {
+            let unit = into / f64::from(units);
+            (units, unit, self.input_leg(kind, unit, f64::from(units)))
+        });
+        legs.filter(|(_, _, area)| *area <= self.cap)
+    }
+
+    /// Variance at the gate line of a family that takes a current at a level.
+    pub(super) fn gate(&self, kind: &Kind, current: usize, level: usize) -> f64 {
+        let collected = self.levels.values[level] + kind.line / self.currents[current];
+        self.lines.values[self.lines.of(collected)]
+    }
+
+    /// The cheapest child below a gate line, where `known` tells the cost of a subtree by current
+    /// and level, and the layer it stands in.
+    pub(super) fn cheapest_child(
+        &self,
+        kind: &Kind,
+        line: f64,
+        known: impl Fn(usize) -> (f64, usize),
+    ) -> Option<Child> {
+        let mut best: Option<Child> = None;
+        for (c, &current) in self.currents.iter().enumerate() {
+            let level = self.levels.of(line + kind.line / current);
+            let (cost, above) = known(c * self.levels.values.len() + level);
+            let leg = self.feeder(kind, current);
+            let cost = cost + leg;
+            if cost < best.map_or(f64::INFINITY, |b| b.cost) {
+                best = Some(Child {
+                    cost,
+                    leg,
+                    current: c,
+                    level,
+                    above,
+                });
+            }
+        }
+        best
     }
 
     /// Least area of a leg of `m` units of `unit` ampere each.
@@ -313,14 +461,14 @@ impl Relaxed {
     }
 
     /// Least area of an input leg.
-    pub(super) fn input_leg(&self, kind: &Kind, unit: f64, m: f64) -> f64 {
+    fn input_leg(&self, kind: &Kind, unit: f64, m: f64) -> f64 {
         self.leg_area(kind.rail, kind.density[0], unit, m)
     }
 
     /// Area of the leg that feeds a family with `current`: as few units as may be, none larger than
     /// the leader's own current. Whole units may leave it short by as much as a feeder may err.
     #[inline(always)]
-    pub(super) fn feeder(&self, kind: &Kind, current: f64) -> f64 {
+    fn feeder(&self, kind: &Kind, current: f64) -> f64 {
         let largest = kind.leader.map_or(current, |g| {
             (self.amps[g] * (1.0 + self.tolerances[g])).min(current)
         });
@@ -365,73 +513,24 @@ impl Relaxed {
     }
 
     fn desk(&self, kind: &Kind, prices: &Prices) -> Desk {
-        let (c, v) = (self.currents.len(), self.levels.values.len());
-        let mut inputs = Vec::with_capacity(c);
-        let mut lines = Vec::with_capacity(c * v);
-        let mut drops = Vec::with_capacity(c * self.lines.values.len());
-        let mut feeders = Vec::with_capacity(c);
-        for &into in &self.currents {
-            inputs.push(
-                self.units
-                    .iter()
-                    .map(|&units| {
-                        let unit = into / f64::from(units);
-                        (units, self.input_leg(kind, unit, f64::from(units)))
-                    })
-                    .filter(|(_, area)| *area <= self.cap)
-                    .map(|(units, area)| Input {
-                        units,
-                        base: area + prices.overhead * into,
-                        gains: vec![0.0; v],
-                        root: 0.0,
-                    })
-                    .collect(),
-            );
-            let own = kind.line / into;
-            lines.extend(
-                self.levels
-                    .values
-                    .iter()
-                    .map(|l| self.lines.of(l + own) as u16),
-            );
-            drops.extend(
-                self.lines
-                    .values
-                    .iter()
-                    .map(|l| self.levels.of(l + own) as u16),
-            );
-            feeders.push(self.feeder(kind, into));
-        }
+        let v = self.levels.values.len();
+        let inputs = self.currents.iter().map(|&into| {
+            self.input_legs(kind, into)
+                .map(|(units, _, area)| Input {
+                    units,
+                    base: area + prices.overhead * into,
+                    gains: vec![0.0; v],
+                    root: 0.0,
+                })
+                .collect()
+        });
         let mut desk = Desk {
-            inputs,
+            inputs: inputs.collect(),
             least: Vec::new(),
             kids: vec![0.0; self.lines.values.len()],
-            lines,
-            drops,
-            feeders,
         };
         desk.settle(v);
         desk
-    }
-
-    /// What the best child from a table costs, with its feeder, by level of the gate line.
-    fn child(&self, desk: &Desk, table: &[f64], out: &mut Vec<f64>) {
-        let (v, w) = (self.levels.values.len(), self.lines.values.len());
-        out.clear();
-        out.resize(w, f64::INFINITY);
-        for (c, &leg) in desk.feeders.iter().enumerate() {
-            let row = &table[c * v..(c + 1) * v];
-            if row[0].is_infinite() {
-                continue;
-            }
-            let drops = &desk.drops[c * w..(c + 1) * w];
-            for (out, &drop) in out.iter_mut().zip(drops) {
-                let cost = leg + row[drop as usize];
-                if cost < *out {
-                    *out = cost;
-                }
-            }
-        }
     }
 
     /// What all roots together cost at least at given prices.
@@ -500,38 +599,28 @@ impl Relaxed {
                 [0, 1].map(|r| vec![vec![f64::INFINITY; self.lines.values.len()]; desks[r].len()]);
             for above in 0..DEPTH {
                 let rail = (home + above) % 2;
-                let costs: Option<Vec<f64>> = above
-                    .checked_sub(1)
-                    .map(|a| tables.layers[p][a].iter().map(|s| s.0).collect());
+                let below = above.checked_sub(1).map(|a| costs(&tables.layers[p][a]));
                 let table = self.layer(
                     &desks[rail],
                     &mut children[rail],
                     rail,
                     k,
                     prices,
-                    costs.as_deref(),
+                    below.as_deref(),
                 );
-                let mut better = false;
-                for (best, here) in tables.best[p][rail].iter_mut().zip(&table) {
-                    if here.0 < best.0 {
-                        *best = (here.0, above as u8);
-                        better = true;
-                    }
-                }
+                let better = improve(&mut tables.best[p][rail], &table, above);
                 tables.layers[p].push(table);
-                // A layer of relays that is nowhere better than the last on its rail makes no
-                // better ones.
                 if !better {
                     break;
                 }
             }
             // One more layer to hang below a family that is the last of its row.
             let made = tables.layers[p].len();
-            let last: Vec<f64> = tables.layers[p][made - 1].iter().map(|s| s.0).collect();
+            let last = costs(&tables.layers[p][made - 1]);
             let rail = (home + made) % 2;
             let mut scratch = Vec::new();
-            for (desk, child) in desks[rail].iter().zip(&mut children[rail]) {
-                self.child(desk, &last, &mut scratch);
+            for (hops, child) in self.hops[rail].iter().zip(&mut children[rail]) {
+                hops.child(&last, &mut scratch);
                 for (a, b) in child.iter_mut().zip(&scratch) {
                     *a = a.min(*b);
                 }
@@ -591,21 +680,21 @@ impl Relaxed {
         below: Option<&[f64]>,
     ) -> Table {
         let (c, v) = (self.currents.len(), self.levels.values.len());
-        let kinds: &[Kind] = &self.kinds[rail];
         let chunk = desks.len().div_ceil(16).max(1);
         let parts: Vec<Table> = desks
             .par_chunks(chunk)
             .zip(children.par_chunks_mut(chunk))
-            .zip(kinds.par_chunks(chunk))
             .enumerate()
-            .map(|(part, ((desks, children), kinds))| {
+            .map(|(part, (desks, children))| {
                 let mut table = vec![(f64::INFINITY, 0u32); c * v];
                 let mut child = Vec::new();
                 let mut costs = vec![0.0; v];
-                for (n, (desk, kind)) in desks.iter().zip(kinds).enumerate() {
-                    let number = (part * chunk + n) as u32;
+                for (n, desk) in desks.iter().enumerate() {
+                    let number = part * chunk + n;
+                    let kind = &self.kinds[rail][number];
+                    let hops = &self.hops[rail][number];
                     if let Some(below) = below {
-                        self.child(desk, below, &mut child);
+                        hops.child(below, &mut child);
                         for (kept, new) in children[n].iter_mut().zip(&child) {
                             *kept = kept.min(*new);
                         }
@@ -627,7 +716,7 @@ impl Relaxed {
                                 }
                             }
                         }
-                        let lines = &desk.lines[i * v..(i + 1) * v];
+                        let lines = &hops.lines[i * v..(i + 1) * v];
                         let slots = &mut table[i * v..(i + 1) * v];
                         for ((cost, &line), slot) in costs.iter().zip(lines).zip(slots) {
                             let mut total = cost + desk.kids[line as usize];
@@ -635,7 +724,7 @@ impl Relaxed {
                                 total += child[line as usize];
                             }
                             if total < slot.0 {
-                                *slot = (total, number);
+                                *slot = (total, number as u32);
                             }
                         }
                     }
@@ -643,16 +732,7 @@ impl Relaxed {
                 table
             })
             .collect();
-        let mut parts = parts.into_iter();
-        let mut table = parts.next().unwrap_or_default();
-        for part in parts {
-            for (slot, other) in table.iter_mut().zip(part) {
-                if other.0 < slot.0 {
-                    *slot = other;
-                }
-            }
-        }
-        table
+        least_of(parts)
     }
 
     /// Networks that start at the reference with first output `k`, by kind of their root.
@@ -668,7 +748,7 @@ impl Relaxed {
         let mut out = Vec::new();
         let kinds = &self.kinds[self.root];
         for (n, ((desk, child), kind)) in desks.iter().zip(children).zip(kinds).enumerate() {
-            let line = desk.lines[self.reference * v] as usize;
+            let line = self.hops[self.root][n].lines[self.reference * v] as usize;
             let mut least = f64::INFINITY;
             for input in &desk.inputs[self.reference] {
                 let unit = into / f64::from(input.units);
@@ -714,38 +794,30 @@ impl Relaxed {
         first: usize,
         kind_index: usize,
     ) -> Option<(f64, Family)> {
-        let v = self.levels.values.len();
         let rail = state.map_or(self.root, |s| s.rail);
         let kind = &self.kinds[rail][kind_index];
         let (i, j) = state.map_or((self.reference, 0), |s| (s.current, s.level));
         let into = self.currents[i];
         let root = state.is_none();
-        let line = self.lines.values[self.lines.of(self.levels.values[j] + kind.line / into)];
+        let line = self.gate(kind, i, j);
         // The cheapest child with a first output.
         let child = |p: usize, layer: Option<usize>| {
-            let mut best: Option<(f64, f64, State)> = None;
-            for (c, &current) in self.currents.iter().enumerate() {
-                let level = self.levels.of(line + kind.line / current);
-                let (cost, above) = match layer {
-                    Some(above) => (tables.layers[p][above][c * v + level].0, above),
-                    None => {
-                        let slot = tables.best[p][1 - rail][c * v + level];
-                        (slot.0, slot.1 as usize)
-                    }
-                };
-                let leg = self.feeder(kind, current);
-                if cost + leg < best.map_or(f64::INFINITY, |b| b.0) {
-                    let state = State {
-                        rail: 1 - rail,
-                        first: p,
-                        above,
-                        current: c,
-                        level,
-                    };
-                    best = Some((cost + leg, leg, state));
+            let known = |slot: usize| match layer {
+                Some(above) => (tables.layers[p][above][slot].0, above),
+                None => {
+                    let (cost, above) = tables.best[p][1 - rail][slot];
+                    (cost, above as usize)
                 }
-            }
-            best
+            };
+            let child = self.cheapest_child(kind, line, known)?;
+            let state = State {
+                rail: 1 - rail,
+                first: p,
+                above: child.above,
+                current: child.current,
+                level: child.level,
+            };
+            Some((child.cost, child.leg, state))
         };
         let mut best: Option<(f64, Family)> = None;
         let below = match state {
@@ -753,12 +825,7 @@ impl Relaxed {
             Some(_) => None,
             None => child(first, None),
         };
-        for &units in &self.units {
-            let unit = into / f64::from(units);
-            let area = self.input_leg(kind, unit, f64::from(units));
-            if area > self.cap {
-                continue;
-            }
+        for (_, unit, area) in self.input_legs(kind, into) {
             let mut family = Family {
                 area,
                 overhead: into,
